@@ -1,0 +1,1 @@
+"""A thin shell: options rendered from core.fields."""

@@ -1,0 +1,1 @@
+"""What is computed from samples: fit, residual, bands, spectrum, readings. Pure: arrays in, values out."""

@@ -1,0 +1,1 @@
+"""A Session as page, document, table, picture. Never imports the store."""

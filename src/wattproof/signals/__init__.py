@@ -1,0 +1,1 @@
+"""What is played: tone, tone pair, log sweep, burst, silence, ramps. Pure: numbers in, samples out."""

@@ -1,0 +1,1 @@
+"""The session file and the records of rig and calibration."""
