@@ -1,11 +1,10 @@
 """What is known of an interface: volts per full scale, its own floors and its response, with dates."""
 
 import attrs
-import numpy as np
 
 from wattproof.core import checks
+from wattproof.core.loopback import Loop, Response
 from wattproof.core.quantity import Quantity
-from wattproof.core.signal import Samples
 
 
 @attrs.frozen
@@ -26,18 +25,7 @@ class Floor:
     level_fs: float = attrs.field(validator=checks.not_negative)
     noise_fs: Quantity
     harmonics: tuple[tuple[int, Quantity], ...] = ()
-
-
-@attrs.frozen(eq=False)
-class Response:
-    """Complex gain of output and input together against frequency: `frequency_hz` and `gain` of equal length."""
-
-    frequency_hz: Samples = attrs.field(factory=lambda: np.zeros(0))
-    gain: np.ndarray[tuple[int], np.dtype[np.complex128]] = attrs.field(factory=lambda: np.zeros(0, dtype=complex))
-
-    def __attrs_post_init__(self) -> None:
-        if self.frequency_hz.shape != self.gain.shape:
-            raise ValueError("Response.frequency_hz and gain differ in length; each frequency has one gain")
+    phases_rad: tuple[float, ...] = ()  # of the harmonics in the same order, φk in sin θ + Σ ak·sin(kθ + φk)
 
 
 @attrs.frozen(eq=False)
@@ -51,6 +39,13 @@ class Calibration:
     out_floors: tuple[Floor, ...] = ()
     in_floors: tuple[Floor, ...] = ()
     response: Response = attrs.field(factory=Response)
+    date: str = ""  # ISO 8601, of the calibration by loopback; empty where there was none
+    sample_format: str = ""  # as the device delivered it, for example "24 bit"
+    loops: tuple[Loop, ...] = ()
+
+    def loop(self, socket: int) -> Loop | None:
+        """The loop that was measured into an input, or None."""
+        return next((loop for loop in self.loops if loop.input == socket), None)
 
     def input_vrms(self, socket: int) -> Quantity | None:
         """V rms of full scale at an input, or None where it is not known."""

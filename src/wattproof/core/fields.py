@@ -48,12 +48,19 @@ def declared(  # noqa: PLR0913 - a declaration names everything that is known of
         below = minimum is not None and not value >= minimum
         above = maximum is not None and not value <= maximum
         if below or above:
-            bounds = f"from {minimum:g}" * (minimum is not None) + f" to {maximum:g}" * (maximum is not None)
             raise ValueError(
-                f"{label.lower()} is {value:g} {unit}; it must lie {bounds.strip()} {unit}".replace("  ", " ")
+                f"{label.lower()} is {value:g} {unit}".rstrip() + f"; it must {_bounds(minimum, maximum, unit)}"
             )
 
     return attrs.field(default=default, validator=check, metadata={_KEY: known})
+
+
+def _bounds(minimum: float | None, maximum: float | None, unit: str) -> str:
+    if maximum is None:
+        return f"be at least {minimum:g} {unit}".rstrip()
+    if minimum is None:
+        return f"be at most {maximum:g} {unit}".rstrip()
+    return f"lie from {minimum:g} to {maximum:g} {unit}".rstrip()
 
 
 def fields_of(cls: type[Any]) -> tuple[Declared, ...]:

@@ -4,8 +4,6 @@ import math
 
 import attrs
 
-from wattproof.core import checks
-
 STATISTICS = "statistics"  # the source id of the random part of one reading
 
 
@@ -18,10 +16,12 @@ class Part:
     """
 
     source: str
-    u: float = attrs.field(validator=checks.finite)
+    u: float
     dof: float = math.inf
 
-    def __attrs_post_init__(self) -> None:
+    def __attrs_post_init__(self) -> None:  # not as validators: a live reading makes some forty of these
+        if not math.isfinite(self.u):
+            raise ValueError(f"Part.u is {self.u}; it must be a finite number")
         if not self.dof > 0:
             raise ValueError(f"Part.dof is {self.dof} for {self.source}; it must be above zero")
 
@@ -34,10 +34,14 @@ class Quantity:
     (GUM 5.1.2), the degrees of freedom follow Welch and Satterthwaite (GUM G.4.1, not truncated here).
     """
 
-    value: float = attrs.field(validator=checks.finite)
+    value: float
     unit: str
     parts: tuple[Part, ...] = ()
     limited_by: str | None = None
+
+    def __attrs_post_init__(self) -> None:
+        if not math.isfinite(self.value):
+            raise ValueError(f"Quantity.value is {self.value}; it must be a finite number")
 
     @property
     def u(self) -> float:

@@ -50,9 +50,15 @@ class ReadingSettings:
         Reference.TOTAL, label="Ratio to", help="what distortion is compared with: total signal or fundamental"
     )
     full_scale_vrms: float | None = declared(
-        None, label="Full scale", unit="V rms", help="V rms of a full-scale sine at this point (0 dBFS, AES17)"
+        None,
+        label="Full scale",
+        unit="V rms",
+        help="V rms of a full-scale sine at this point (0 dBFS, AES17)",
+        validator=checks.positive,
     )
-    load_ohm: float | None = declared(None, label="Load", unit="Ω", help="resistance that takes the power")
+    load_ohm: float | None = declared(
+        None, label="Load", unit="Ω", help="resistance that takes the power", validator=checks.positive
+    )
 
     def __attrs_post_init__(self) -> None:
         if self.low_hz >= self.high_hz:
@@ -131,10 +137,10 @@ class Reading:
         if self.thdn is None or self.thdn.value <= 0.0:
             return None
         total_over_residual = 1.0 / self.thdn.value
-        if self.settings.reference is Reference.FUNDAMENTAL:
+        if self.settings.reference == Reference.FUNDAMENTAL:
             total_over_residual = (1.0 + total_over_residual**2) ** 0.5
         slope = total_over_residual / self.thdn.value
-        if self.settings.reference is Reference.FUNDAMENTAL:
+        if self.settings.reference == Reference.FUNDAMENTAL:
             slope = 1.0 / (self.thdn.value**3 * total_over_residual)
         parts = tuple(attrs.evolve(part, u=-part.u * slope) for part in self.thdn.parts)
         return Quantity(total_over_residual, "1", parts, self.thdn.limited_by)

@@ -28,6 +28,23 @@ class Tone:
 
 
 @attrs.frozen
+class Sweep(Tone):
+    """A sine whose frequency rises from `frequency_hz` to `end_hz`, by the same factor in each moment; then silence.
+
+    With L = seconds/ln(end/start), sample n is sin(2π·start·L·(e^(t/L) − 1)) at t = n/rate, under raised-cosine ramps
+    of 10 ms at both ends. It sounds once, out of silence, and a bench answers with the absolute frame at which its
+    first sample is handed to the output: the way round, which a tone's answer counts in, is what a sweep measures.
+    """
+
+    end_hz: float = attrs.field(kw_only=True, validator=checks.positive)
+    seconds: float = attrs.field(kw_only=True, validator=checks.positive)
+
+    def __attrs_post_init__(self) -> None:
+        if self.end_hz <= self.frequency_hz:
+            raise ValueError(f"Sweep runs from {self.frequency_hz:g} to {self.end_hz:g} Hz; it must rise")
+
+
+@attrs.frozen
 class Span:
     """A stretch of a capture: `frames` frames from the absolute frame `first_frame`."""
 

@@ -13,9 +13,11 @@ import numpy as np
 from wattproof.core.signal import Samples
 from wattproof.dsp.model import Matrix
 from wattproof.dsp.start import MEDIAN_OF_NOISE
+from wattproof.dsp.workspace import Workspace
 
 TAPERED = 0.25  # share of the block that is tapered, both ends together
-_AROUND = np.array([offset for offset in range(-14, 15) if abs(offset) > 2])  # bins that tell of a line's noise
+_AROUND = np.array([offset for offset in range(-22, 23) if abs(offset) > 2])  # bins that tell of a line's noise
+_LOWEST = 3
 WINDOW = "cosine-tapered, an eighth at each end"
 
 
@@ -59,20 +61,24 @@ class NoiseSpectrum:
 
     def bins(self, low_hz: float, high_hz: float) -> slice:
         """Return the bins whose centres lie from low_hz to high_hz, both included; never the one of DC."""
-        first = max(1, int(np.ceil(low_hz / self.bin_hz - 1e-9)))
-        last = min(self.power.shape[1] - 1, int(np.floor(high_hz / self.bin_hz + 1e-9)))
+        first = max(1, math.ceil(low_hz / self.bin_hz - 1e-9))
+        last = min(self.power.shape[1] - 1, math.floor(high_hz / self.bin_hz + 1e-9))
         return slice(first, max(first, last + 1))
 
 
-def noise_spectrum(residual: Matrix, rate_hz: float) -> NoiseSpectrum:
-    """Return the tapered spectrum of a residual, shape (channels, rows, columns)."""
+def noise_spectrum(residual: Matrix, rate_hz: float, work: Workspace | None = None) -> NoiseSpectrum:
+    """Return the tapered spectrum of a residual, shape (channels, rows, columns); its power lies in `work` if given."""
+    work = work or Workspace()
     flat = residual.reshape(residual.shape[0], -1)
     frames = flat.shape[1]
     window = taper(frames)
-    power = np.empty((flat.shape[0], frames // 2 + 1))
+    power = work.array("power", (flat.shape[0], frames // 2 + 1))
+    tapered = work.array("tapered", (frames,))
     for channel in range(flat.shape[0]):  # one channel at a time stays in the processor's cache
-        lines = np.fft.rfft(flat[channel] * window)
-        np.add(np.square(lines.real), np.square(lines.imag), out=power[channel])
+        np.multiply(flat[channel], window, out=tapered)
+        squares = np.fft.rfft(tapered).view(np.float64)
+        np.multiply(squares, squares, out=squares)
+        np.add(squares[0::2], squares[1::2], out=power[channel])
     power *= 2.0 / frames**2
     power[:, 0] *= 0.5
     if frames % 2 == 0:
@@ -83,9 +89,12 @@ def noise_spectrum(residual: Matrix, rate_hz: float) -> NoiseSpectrum:
 def line_noise(power: Matrix, places: Samples) -> Samples:
     """Return the mean square that noise alone puts on a line at each place (in bins), from the bins around it.
 
-    `power` has shape (…, bins); the result (…, places) is the median of 24 bins, turned into a mean.
+    `power` has shape (…, bins); the result (…, places) is the median of 40 bins, turned into a mean.
     """
-    bins = np.clip(np.rint(places).astype(np.intp)[:, None] + _AROUND, 1, power.shape[-1] - 1)
+    last = power.shape[-1] - 1
+    bins = np.rint(places).astype(np.intp)[:, None] + _AROUND
+    # at either end the other side stands in, mirrored; the lowest bins are what the trend took
+    bins = np.abs(last - np.abs(last - _LOWEST - np.abs(bins - _LOWEST)))
     middle = _AROUND.size // 2
     ranked = np.partition(power[..., bins], (middle - 1, middle), axis=-1)
     noise: Samples = (ranked[..., middle - 1] + ranked[..., middle]) * (0.5 / MEDIAN_OF_NOISE)
@@ -127,7 +136,7 @@ def band_noise(  # noqa: PLR0913 - a band, what the fit took from it and what st
         bins = np.rint(np.array(lines_hz) / spectrum.bin_hz).astype(np.intp)[:, None] + np.arange(-3, 4) - inside.start
         bins = np.unique(bins[(bins >= 0) & (bins < count)])
         lines, power = float(power[bins].sum()), np.delete(power, bins)
-    total = float(power.sum())
+    total = float(np.add.reduce(power))
     square = float(power @ power)
     # bins at the edges count by their share, and bins taken for a line are filled with what stands beside them
     total *= min(max(width_hz / (count * spectrum.bin_hz), 1.0 - 1.0 / count), 1.0 + 1.0 / count)

@@ -9,6 +9,7 @@ from wattproof.dsp.fit import SineFit
 from wattproof.dsp.mains import Hum
 from wattproof.dsp.model import Matrix
 from wattproof.dsp.prepared import Phasors
+from wattproof.dsp.workspace import Workspace
 
 EDGE = 1e-6  # a harmonic within this share beyond an edge is on it: what rounding and a good clock leave open
 
@@ -39,18 +40,28 @@ class Block:
     hum: tuple[Hum | None, ...]
 
 
-def analysed(samples: Matrix, fit: SineFit, *, left: Matrix | None = None, hum: Hum | None = None) -> Block:
+def analysed(
+    samples: Matrix,
+    fit: SineFit,
+    *,
+    left: Matrix | None = None,
+    hum: Hum | None = None,
+    work: Workspace | None = None,
+) -> Block:
     """Return the analysis of samples, shape (channels, rows, columns), that `fit` was made of.
 
-    `left` is given where more than the fit was taken out, `hum` where that was a single channel's hum.
+    `left` is given where more than the fit was taken out, `hum` where that was a single channel's hum. With `work` the
+    result holds until the next one is made there.
     """
     if left is None:
-        left = fit.waveform()
+        left = fit.waveform(out=work.array("left", samples.shape) if work else None)
         np.subtract(samples, left, out=left)
-    spectrum = noise_spectrum(left, fit.rate_hz)
+    spectrum = noise_spectrum(left, fit.rate_hz, work)
     orders = np.array(fit.model.orders, dtype=np.float64)
-    terms = np.r_[0, fit.model.ramp + 1 : fit.coefficients.shape[1]] if orders.size else np.zeros(0, dtype=np.intp)
-    spread = fit.prepared.unit_variance[terms] * (fit.frames / 2.0)  # 1 where columns are orthogonal
+    ramp = fit.model.ramp if orders.size else 0
+    amplitudes, variance = fit.coefficients[:, ramp:].copy(), fit.prepared.unit_variance[ramp:].copy()
+    amplitudes[:, :1], variance[:1] = fit.coefficients[:, :1], fit.prepared.unit_variance[:1]  # not those of the ramp
+    spread = variance * (fit.frames / 2.0)  # 1 where columns are orthogonal
     noise = line_noise(spectrum.power, orders * (fit.frequency_hz / spectrum.bin_hz)) * spread
     hums = (hum,) * samples.shape[0]
-    return Block(samples, fit.rate_hz, fit, left, spectrum, orders, fit.coefficients[:, terms], noise, hums)
+    return Block(samples, fit.rate_hz, fit, left, spectrum, orders, amplitudes, noise, hums)

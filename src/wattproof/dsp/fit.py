@@ -6,6 +6,7 @@ and by a polynomial trend that takes drift away together with the sine instead o
 """
 
 import math
+from functools import lru_cache
 
 import attrs
 import numpy as np
@@ -62,21 +63,20 @@ class SineFit:
     @property
     def dc(self) -> Matrix:
         """Mean of the trend over the block, shape (channels,)."""
-        means = np.array([1.0 / (power + 1) if power % 2 == 0 else 0.0 for power in range(self.model.trend + 1)])
-        mean: Matrix = self.trend @ means
+        mean: Matrix = self.trend @ _means(self.model.trend)
         return mean
 
-    @property
-    def relative_slope(self) -> Matrix:
-        """How fast the fundamental's level moves, in relative change per s, shape (channels,)."""
-        if self.model.ramp == 0:
-            return np.zeros(self.solution.shape[0])
-        first = self.coefficients[:, 0]
-        slope: Matrix = (self.coefficients[:, 1] / np.where(first == 0, 1.0, first)).real * 2.0 / self.seconds
-        return slope
+    def relative_slope(self, channel: int) -> float:
+        """Return how fast the fundamental's level moves in one channel (index from 0), in relative change per s."""
+        first = complex(self.coefficients[channel, 0])
+        if self.model.ramp == 0 or first == 0.0:
+            return 0.0
+        return (complex(self.coefficients[channel, 1]) / first).real * 2.0 / self.seconds
 
-    def waveform(self, *, trend: bool = True, first: bool = True, others: bool = True) -> Matrix:
-        """Return the fitted waveform of the chosen parts, shape (channels, rows, columns)."""
+    def waveform(
+        self, *, trend: bool = True, first: bool = True, others: bool = True, out: Matrix | None = None
+    ) -> Matrix:
+        """Return the fitted waveform of the chosen parts, shape (channels, rows, columns), in `out` if given."""
         split = self.model.trend + 1
         beyond = split + 2 * (self.model.ramp + 1)
         solution = self.solution
@@ -85,11 +85,17 @@ class SineFit:
             for start, end, wanted in ((0, split, trend), (split, beyond, first), (beyond, None, others)):
                 if not wanted:
                     solution[:, start:end] = 0.0
-        return self.prepared.waveform(solution)
+        return self.prepared.waveform(solution, out)
+
+
+@lru_cache(maxsize=8)
+def _means(trend: int) -> Matrix:
+    """Return the means of τ^0…τ^trend over −1…1."""
+    return np.array([1.0 / (power + 1) if power % 2 == 0 else 0.0 for power in range(trend + 1)])
 
 
 def block_of(samples: Samples) -> Matrix:
-    """Return samples, shape (frames, channels), as a contiguous block (channels, rows, columns).
+    """Return samples, shape (frames, channels), as a block (channels, rows, columns), contiguous along the frames.
 
     Frames that fill no row are left off the end (under 2 % of them).
 
@@ -97,8 +103,10 @@ def block_of(samples: Samples) -> Matrix:
         ValueError: fewer than 16 frames.
     """
     grid = grid_for(samples.shape[0])
-    block = np.ascontiguousarray(samples[: grid.frames].T)
-    return block.reshape(samples.shape[1], grid.rows, grid.columns)
+    by_channel = samples.T[:, : grid.frames]
+    if by_channel.strides[1] != by_channel.itemsize:
+        by_channel = np.ascontiguousarray(by_channel)
+    return by_channel.reshape(samples.shape[1], grid.rows, grid.columns)
 
 
 def fit_prepared(block: Matrix, prepared: Prepared, rate_hz: float) -> SineFit:
@@ -135,15 +143,18 @@ def fit_block(
     quick = Model(few, ramp=max(1, model.ramp), trend=model.trend)
     rough_rad = _ROUGH_PHASE_RAD if len(few) == 1 else 1e-6  # many orders cost more to prepare than a few more passes
     grid = grid_for(block.shape[1] * block.shape[2])
-    cycles, last, last_full = start_hz / rate_hz, math.inf, math.inf
+    cycles, last_full = start_hz / rate_hz, math.inf
+    rough = len(few) > 1
     fit = None
     for number in range(_MOST_PASSES):
-        rough = last > rough_rad and number < _MOST_PASSES // 2 and (number > 0 or len(few) > 1)
         fit = fit_prepared(block, prepare(quick if rough else model, grid, cycles), rate_hz)
         turned = abs(fit.phase_error_rad)
-        if not rough and (turned <= phase_limit_rad or turned >= last_full):
-            break
-        last, last_full = turned, last_full if rough else turned
+        if not rough:
+            if turned <= phase_limit_rad or turned >= last_full:
+                break
+            last_full = turned
+        # a rough fit leans on what it leaves out: after a whole one there is no way back to it
+        rough = (rough or number == 0) and turned > rough_rad and number < _MOST_PASSES // 2
         cycles = fit.frequency_hz / rate_hz
         if not 0.0 < cycles < 0.5:
             raise ValueError(f"the fit ran to {cycles * rate_hz:g} Hz; start nearer to the tone")

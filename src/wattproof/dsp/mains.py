@@ -10,7 +10,7 @@ from wattproof.core.signal import Samples
 from wattproof.dsp.band import NoiseSpectrum, line_noise
 from wattproof.dsp.fit import fit_block
 from wattproof.dsp.model import Matrix, Model
-from wattproof.dsp.start import hann_spectrum, line_near
+from wattproof.dsp.start import Line, Spectrum, hann_spectrum, line_near
 
 NOMINAL_HZ = (50.0, 60.0)
 TOLERANCE = 0.005  # public supplies keep within 1 %, mostly 0.2 %: common practice, no source
@@ -18,6 +18,7 @@ HIGHEST_LINE = 100  # 5 or 6 kHz: beyond, lines of a rectifier's buzz drown in n
 APART_BINS = 2.0  # lines nearer than this to a harmonic, in units of 1/T, cannot be told from it
 _CLEAR = 30.0  # a line that shows the mains frequency stands this far (15 dB) over the noise in its bandwidth
 _QUICK_NUMBERS = 8
+_QUICK_BINS = 4  # the tapered block keeps 99 % of a line within four bins, wherever between them it lies
 _FAINTEST = 1e-9  # −180 dBFS: below, a line is the rounding of numbers and not of this world
 _SEEN = 12.0  # and any other line this far over the noise on one line: chance e^−12
 
@@ -52,19 +53,30 @@ def contains_mains(frequency_hz: float, mains_hz: float | None, seconds: float) 
 def _candidate(residual: Samples, rate_hz: float, tone_hz: float | None, high_hz: float) -> tuple[float, int] | None:
     """Return the mains frequency and the number of its clearest line, or None where no line is clear."""
     seconds = residual.size / rate_hz
-    spectrum = hann_spectrum(residual, rate_hz, 20.0, min(high_hz, 2500.0))
-    best: tuple[float, float, int] | None = None
-    for nominal in NOMINAL_HZ:
-        reach = max(TOLERANCE, 1.0 / (seconds * nominal))
-        for number in range(1, 7):
-            centre = nominal * number
-            if centre > high_hz or number == 6 == round(centre / 50.0) or not _apart(number, nominal, tone_hz, seconds):
-                continue
-            line = line_near(spectrum, centre * (1.0 - reach), centre * (1.0 + reach))
-            clear = line.over_noise > _CLEAR and line.amplitude > _FAINTEST
-            if clear and (best is None or line.amplitude > best[0]):
-                best = line.amplitude, line.frequency_hz / number, number
-    return None if best is None else (best[1], best[2])
+    spectrum = hann_spectrum(residual, rate_hz)
+    by_nominal = [_clear_lines(spectrum, nominal, seconds, tone_hz, high_hz) for nominal in NOMINAL_HZ]
+    # 300 Hz belongs to both: the nominal of which more is seen has it
+    lines = max(by_nominal, key=lambda clear: sum(line.amplitude**2 for line in clear.values()))
+    if not lines:
+        return None
+    clearest = max(lines, key=lambda number: lines[number].amplitude)
+    return lines[clearest].frequency_hz / clearest, clearest
+
+
+def _clear_lines(
+    spectrum: Spectrum, nominal: float, seconds: float, tone_hz: float | None, high_hz: float
+) -> dict[int, Line]:
+    """Return the clear lines among the first six multiples of one nominal, by number."""
+    reach = max(TOLERANCE, 1.0 / (seconds * nominal))
+    found = {}
+    for number in range(1, 7):
+        centre = nominal * number
+        if centre > high_hz or not _apart(number, nominal, tone_hz, seconds):
+            continue
+        line = line_near(spectrum, centre * (1.0 - reach), centre * (1.0 + reach))
+        if line.over_noise > _CLEAR and line.amplitude > _FAINTEST:
+            found[number] = line
+    return found
 
 
 def find_hum(
@@ -110,25 +122,28 @@ def find_hum(
 
 
 @lru_cache(maxsize=32)
-def _quick_places(bins: int, seconds: float, low_hz: float) -> tuple[NDArray[np.intp], Matrix]:
-    """Return multiples 1…8 of both nominals, and their bins; multiples below the band lie at bin 0."""
+def _quick_places(bins: int, seconds: float, low_hz: float, high_hz: float) -> tuple[NDArray[np.intp], Matrix]:
+    """Return multiples 1…8 of both nominals, and their bins; multiples outside the band lie at bin 0."""
     numbers = np.tile(np.arange(1, _QUICK_NUMBERS + 1), len(NOMINAL_HZ))
     frequencies = numbers * np.repeat(NOMINAL_HZ, _QUICK_NUMBERS)
-    places = np.where(frequencies >= low_hz, frequencies * seconds, 0.0)
-    return numbers, np.where(places < bins - 2, places, 0.0)
+    inside = (frequencies >= low_hz) & (frequencies <= high_hz)
+    places = np.where(inside, frequencies * seconds, 0.0)
+    return numbers, np.where(places < bins - _QUICK_BINS - 1, places, 0.0)
 
 
-def quick_hum(spectrum: NoiseSpectrum, tone_hz: float | None, low_hz: float) -> tuple[Hum | None, ...]:
+def quick_hum(
+    spectrum: NoiseSpectrum, tone_hz: float | None, band_hz: tuple[float, float]
+) -> tuple[tuple[Hum | None, ...], NoiseSpectrum]:
     """Find hum by the bins around multiples of 50 and 60 Hz: for the live reading, where a fit would cost too much.
 
-    Returns one Hum or None per channel. The frequency is nominal and every line is what its three bins hold over the
-    noise. Blocks under 0.2 s tell none.
+    Returns one Hum or None per channel, and the spectrum with noise in the place of these lines. The frequency is
+    nominal, and every line is what four bins to each side hold over the noise. Blocks under 0.2 s tell none.
     """
     power, seconds = spectrum.power, spectrum.seconds
     nothing: tuple[Hum | None, ...] = (None,) * power.shape[0]
     if seconds < 0.2:
-        return nothing
-    numbers, places = _quick_places(power.shape[1], seconds, low_hz)
+        return nothing, spectrum
+    numbers, places = _quick_places(power.shape[1], seconds, *band_hz)
     centre = np.rint(places).astype(np.intp)
     noise = line_noise(power, places)
     squares = power[:, centre - 1] + power[:, centre] + power[:, centre + 1] - 2.0 * noise
@@ -138,20 +153,32 @@ def quick_hum(spectrum: NoiseSpectrum, tone_hz: float | None, low_hz: float) -> 
         order = np.maximum(1.0, np.rint(frequencies / tone_hz))
         clear &= np.abs(order * tone_hz - frequencies) * seconds >= APART_BINS
     if not clear.any():
-        return nothing
-    return tuple(_quick_channel(numbers, *rows) for rows in zip(clear, squares, noise, strict=True))
+        return nothing, spectrum
+    cleaned = power.copy()
+    strength = (clear * squares).reshape(power.shape[0], len(NOMINAL_HZ), -1).sum(axis=2)
+    hums = tuple(
+        _moved_out(cleaned[channel], int(np.argmax(strength[channel])), clear[channel], centre, noise[channel])
+        for channel in range(power.shape[0])
+    )
+    return hums, NoiseSpectrum(cleaned, spectrum.bin_hz, spectrum.frames)
 
 
-def _quick_channel(numbers: NDArray[np.intp], clear: NDArray[np.bool_], squares: Samples, noise: Samples) -> Hum | None:
-    by_nominal = (clear * squares).reshape(len(NOMINAL_HZ), -1).sum(axis=1)
-    if not clear.any():
+def _moved_out(
+    power: Samples, nominal: int, clear: NDArray[np.bool_], centre: NDArray[np.intp], noise: Samples
+) -> Hum | None:
+    """Replace the clear lines of one nominal in power, shape (bins,), by noise; return them as hum."""
+    seen = nominal * _QUICK_NUMBERS + np.flatnonzero(clear.reshape(len(NOMINAL_HZ), -1)[nominal])
+    if not seen.size:
         return None
-    which = int(np.argmax(by_nominal))
-    part = slice(which * _QUICK_NUMBERS, (which + 1) * _QUICK_NUMBERS)
-    seen = np.flatnonzero(clear[part])
+    squares = []
+    for line in seen.tolist():
+        bins = slice(max(1, int(centre[line]) - _QUICK_BINS), int(centre[line]) + _QUICK_BINS + 1)
+        held = power[bins]
+        squares.append(float(held.sum() - (held.size - 1) * noise[line]))
+        held[:] = noise[line]
     return Hum(
-        frequency_hz=NOMINAL_HZ[which],
-        numbers=tuple(int(number) for number in numbers[part][seen]),
-        mean_squares=tuple(squares[part][seen].tolist()),
-        line_noise=tuple(noise[part][seen].tolist()),
+        frequency_hz=NOMINAL_HZ[nominal],
+        numbers=tuple((seen % _QUICK_NUMBERS + 1).tolist()),
+        mean_squares=tuple(squares),
+        line_noise=tuple(noise[seen].tolist()),
     )

@@ -33,15 +33,19 @@ class Model:
     @property
     def terms(self) -> tuple[tuple[int, int], ...]:
         """(power of τ, order) of each term that has a cosine and a sine."""
-        if not self.orders:
-            return ()
-        first = self.orders[0]
-        return tuple((power, first) for power in range(self.ramp + 1)) + tuple((0, k) for k in self.orders[1:])
+        return _terms(self.orders, self.ramp)
 
     @property
     def parameters(self) -> int:
         """How many real numbers the model fits at a known frequency."""
         return self.trend + 1 + 2 * len(self.terms)
+
+
+@lru_cache(maxsize=128)
+def _terms(orders: tuple[int, ...], ramp: int) -> tuple[tuple[int, int], ...]:
+    if not orders:
+        return ()
+    return tuple((power, orders[0]) for power in range(ramp + 1)) + tuple((0, order) for order in orders[1:])
 
 
 @attrs.frozen(eq=False)

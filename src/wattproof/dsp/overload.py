@@ -23,16 +23,18 @@ def judge_overload(
 
     Without a known frequency the run allowed is that of the lowest one.
     """
-    fair = longest_fair_run(frequency_hz or lowest_hz, span.rate_hz)
     lengths = [
         min(run.first_frame + run.frames, span.end_frame) - max(run.first_frame, span.first_frame)
         for run in overloads
         if run.channel == channel
     ]
+    if not lengths:
+        return None
+    fair = longest_fair_run(frequency_hz or lowest_hz, span.rate_hz)
     unfair = [length for length in lengths if length > fair]
     if not unfair:
         return None
-    share = min(1.0, sum(unfair) / span.frames)
+    share = min(1.0, sum(length for length in lengths if length > 0) / span.frames)
     overdrive = 1.0 / max(math.sin(math.pi / 2.0 * (1.0 - share)), 1e-3)
     add_db = math.ceil(db(overdrive) + _SPARE_DB)
     return note(Kind.OVERLOADED, percent=100.0 * share, longest_frames=max(unfair), add_db=add_db)

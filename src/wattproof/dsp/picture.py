@@ -10,10 +10,13 @@ from wattproof.core.reading import Reading
 from wattproof.core.signal import Samples
 from wattproof.dsp.band import WINDOW, noise_bandwidth_bins
 from wattproof.dsp.block import Block
+from wattproof.dsp.grid import unit_phasors
+from wattproof.dsp.prepared import Phasors
 
 PERIODS = 2.0
 MOST_POINTS = 1200
 COLUMNS = 700
+_MARGIN = 1024  # frames
 
 
 @lru_cache(maxsize=32)
@@ -51,21 +54,51 @@ def _stretch(block: Block, channel: int) -> tuple[Samples, NDArray[np.intp]]:
     return phase - float(np.floor(phase[0] + 1e-9)), frames
 
 
+def _harmonics(turning: Phasors, coefficients: Phasors) -> Samples:
+    """Return Re Σ c·z^k for the orders k = 2, 3…, z of shape (frames,), by Horner's rule."""
+    total = np.zeros_like(turning)
+    for coefficient in coefficients[::-1]:
+        total += coefficient
+        total *= turning
+    waveform: Samples = (total * turning).real
+    return waveform
+
+
+def _in_band(left: Samples, first: int, last: int, high_hz: float, rate_hz: float) -> Samples:
+    """Return left[first:last + 1] without what lies above high_hz: the picture shows what the reading counts.
+
+    An ideal low-pass by FFT; what stands to each side, faded in and out, keeps its ends clean.
+    """
+    count = last + 1 - first
+    size = min(left.size, 1 << (count + _MARGIN).bit_length())
+    begin = min(max(0, first - (size - count) // 2), left.size - size)
+    piece = left[begin : begin + size].copy()
+    before, after = first - begin, begin + size - last - 1
+    piece[:before] *= _rise(before)
+    piece[size - after :] *= _rise(after)[::-1]
+    lines = np.fft.rfft(piece)
+    lines[int(high_hz / rate_hz * size * (1.0 + 1e-6)) + 1 :] = 0.0
+    limited: Samples = np.fft.irfft(lines, size)[before : size - after]
+    return limited
+
+
+@lru_cache(maxsize=256)
+def _rise(frames: int) -> Samples:
+    return 0.5 - 0.5 * np.cos(np.pi * (np.arange(frames) + 0.5) / max(frames, 1))
+
+
 def draw(block: Block, channel: int, reading: Reading) -> Picture:
     """Return the picture of one channel (index from 0) of a block that holds a tone."""
     fit = block.fit
     phase, frames = _stretch(block, channel)
     coefficients = fit.coefficients[channel]
     peak = float(abs(coefficients[0])) or 1.0
-    orders = np.array(fit.model.orders[1:], dtype=np.float64)
-    beyond = coefficients[fit.model.ramp + 1 :]
-    cycles = np.outer(frames - (fit.frames - 1) / 2.0, orders) * (fit.frequency_hz / fit.rate_hz)
-    turns = 2.0 * np.pi * np.remainder(cycles, 1.0)
-    harmonics = np.cos(turns) @ beyond.real - np.sin(turns) @ beyond.imag
-    residual = block.left[channel].ravel()[frames] + harmonics
+    turning = unit_phasors(frames.astype(np.float64) - (fit.frames - 1) / 2.0, fit.frequency_hz / fit.rate_hz)
+    high_hz = min(reading.settings.high_hz, fit.rate_hz / 2.0)
+    left = _in_band(block.left[channel].ravel(), int(frames[0]), int(frames[-1]), high_hz, fit.rate_hz)
+    residual = left[frames - frames[0]] + _harmonics(turning, coefficients[fit.model.ramp + 1 :])
     output = block.samples[channel].ravel()[frames] - fit.dc[channel]
-    settings = reading.settings
-    places, squares = spectrum_columns(block, channel, settings.low_hz, min(settings.high_hz, block.rate_hz / 2.0))
+    places, squares = spectrum_columns(block, channel, reading.settings.low_hz, high_hz)
     return Picture(
         reading=reading,
         phase_cycles=phase,

@@ -115,7 +115,7 @@ class Prepared:
         """Return Σ x·τ^q and the pairs Σ x·τ^q·(cos kθ, sin kθ) of block (channels, rows, columns), by channel."""
         channels, trend, powers = block.shape[0], self.model.trend + 1, self.model.ramp + 1
         by_row = (block.reshape(-1, self.grid.columns) @ self.inner).reshape(channels, self.grid.rows, -1)
-        sums = np.empty((channels, self.model.parameters))
+        sums = np.empty((channels, self.inner.shape[1]))
         moments = self.row_time[:trend] @ by_row[..., :trend]
         sums[:, :trend] = moments.reshape(channels, -1) @ _lift(trend)
         if not self.model.orders:
@@ -127,15 +127,19 @@ class Prepared:
         pairs[:, powers:] = turned[..., powers:].sum(axis=1)
         return sums
 
-    def waveform(self, coefficients: Matrix) -> Matrix:
+    def waveform(self, coefficients: Matrix, out: Matrix | None = None) -> Matrix:
         """Return Σ trend·τ^q + Re Σ c·τ^q·e^{jkθ}, shape (channels, rows, columns), of coefficients by channel."""
+        if out is None:
+            out = np.empty((coefficients.shape[0], self.grid.rows, self.grid.columns))
+        flat = out.reshape(-1, self.grid.columns)
         channels, trend, powers = coefficients.shape[0], self.model.trend + 1, self.model.ramp + 1
         rows = self.grid.rows
-        weights = np.empty((channels, rows, self.model.parameters))
+        weights = np.empty((channels, rows, self.inner.shape[1]))
         lowered = (coefficients[:, :trend] @ self.lower_trend).reshape(channels, trend, rows)
         weights[..., :trend] = lowered.transpose(0, 2, 1)
         if not self.model.orders:
-            return (weights.reshape(channels * rows, -1) @ self.inner.T).reshape(channels, rows, self.grid.columns)
+            np.matmul(weights.reshape(channels * rows, -1), self.inner.T, out=flat)
+            return out
         complex_weights = weights.view(np.complex128)[..., trend // 2 :]
         terms = coefficients.view(np.complex128)[:, trend // 2 :]
         ramp = (terms[:, :powers] @ self.lower_ramp).reshape(channels, powers, rows)
@@ -143,8 +147,8 @@ class Prepared:
         complex_weights[..., powers:] = terms[:, None, powers:]
         complex_weights *= self.row_phasors
         np.conjugate(complex_weights, out=complex_weights)  # Re(c·e) = Re c·cos − Im c·sin
-        waveform = weights.reshape(channels * rows, -1) @ self.inner.T
-        return waveform.reshape(channels, rows, self.grid.columns)
+        np.matmul(weights.reshape(channels * rows, -1), self.inner.T, out=flat)
+        return out
 
 
 def prepare(model: Model, grid: Grid, cycles_per_frame: float) -> Prepared:

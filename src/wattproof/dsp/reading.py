@@ -10,7 +10,6 @@ from typing import Any
 
 import attrs
 import numpy as np
-from numpy.typing import NDArray
 
 from wattproof.core.notes import Note
 from wattproof.core.quantity import Quantity, measured
@@ -33,7 +32,9 @@ from wattproof.dsp.prepared import Phasors
 
 TONE_OVER_NOISE = 10.0**1.5  # 15 dB above the noise in its own bandwidth makes a line a tone
 _ROUNDING = 3e-13  # −250 dB of the fundamental: below, a harmonic is the rounding of numbers
-_SEEN = 9.0  # a harmonic is seen from 3·√(noise on one line) up: chance e^−9
+_SEEN = math.sqrt(
+    2.0 * 9.0
+)  # in u, of one quadrature: 3·√(noise on one line), which noise alone exceeds by chance e^−9
 
 
 @attrs.frozen(eq=False)
@@ -97,26 +98,23 @@ class ChannelReader:
         """Return the reading of a block that holds a tone."""
         fit, line_noise = self.block.fit, self.block.noise[self.channel]
         amplitudes = self.block.amplitudes[self.channel]
-        frequencies = self.block.orders * fit.frequency_hz
-        low, high = self.settings.band_hz
-        inside = (frequencies >= low * (1.0 - EDGE)) & (frequencies <= high * (1.0 + EDGE))
+        inside = self._orders_inside()
         squares = amplitudes.real**2 + amplitudes.imag**2
-        counted = inside.copy()
-        counted[0] = False
-        noise = self._noise(int(inside.sum()))
-        lines = line_noise[counted]
+        counted = slice(max(1, inside.start), inside.stop)
+        noise = self._noise(max(0, inside.stop - inside.start))
+        heights, lines = squares[counted], line_noise[counted]
         hum, u_hum = self._hum()
         parts = _Parts(
             fundamental=float(squares[0]),
             u_fundamental=2.0 * math.sqrt(float(squares[0] * line_noise[0])),
-            harmonics=max(0.0, float(squares[counted].sum() - 2.0 * lines.sum())),
-            u_harmonics=math.sqrt(float(4.0 * (squares[counted] * lines).sum() + 4.0 * (lines * lines).sum())),
+            harmonics=max(0.0, float(np.add.reduce(heights) - 2.0 * np.add.reduce(lines))),
+            u_harmonics=2.0 * math.sqrt(float(heights @ lines + lines @ lines)),
             hum=hum,
             u_hum=u_hum,
             noise=2.0 * noise.mean_square,
             u_noise=2.0 * noise.u,
         )
-        fundamental_inside = bool(inside[0])
+        fundamental_inside = inside.start == 0 < inside.stop
         return Reading(
             span=span,
             channel=channel,
@@ -127,10 +125,18 @@ class ChannelReader:
             fundamental_fs=_root(parts.fundamental, parts.u_fundamental),
             harmonics=self._harmonics(amplitudes, line_noise, counted),
             mains=self._mains(parts.fundamental),
-            moving_db_per_s=float(fit.relative_slope[self.channel]) * DB_PER_RELATIVE,
+            moving_db_per_s=fit.relative_slope(self.channel) * DB_PER_RELATIVE,
             **self._levels(span, parts, inside_fundamental=fundamental_inside),
-            **self._ratios(parts, inside_fundamental=fundamental_inside, any_harmonic=bool(counted.any())),
+            **self._ratios(parts, inside_fundamental=fundamental_inside, any_harmonic=heights.size > 0),
         )
+
+    def _orders_inside(self) -> slice:
+        """Return which of the orders 1, 2, 3… lie in the band, both edges included, as a slice of the block's lines."""
+        low, high = self.settings.band_hz
+        frequency_hz = self.block.fit.frequency_hz
+        first = max(1, math.ceil(low * (1.0 - EDGE) / frequency_hz))
+        last = min(self.block.orders.size, math.floor(high * (1.0 + EDGE) / frequency_hz))
+        return slice(first - 1, max(first - 1, last))
 
     def _frequency(self, square: float, line_noise: float) -> Quantity:
         fit = self.block.fit
@@ -140,7 +146,7 @@ class ChannelReader:
 
     def _ratios(self, parts: _Parts, *, inside_fundamental: bool, any_harmonic: bool) -> dict[str, Any]:
         fundamental = parts.fundamental if inside_fundamental else 0.0
-        to_total = self.settings.reference is Reference.TOTAL
+        to_total = self.settings.reference == Reference.TOTAL
         reference = fundamental + parts.residual if to_total else parts.fundamental
         if reference <= 0.0:
             return {}
@@ -179,23 +185,22 @@ class ChannelReader:
             "crest_factor": crest,
         }
 
-    def _harmonics(self, amplitudes: Phasors, line_noise: Samples, counted: NDArray[np.bool_]) -> tuple[Harmonic, ...]:
+    def _harmonics(self, amplitudes: Phasors, line_noise: Samples, counted: slice) -> tuple[Harmonic, ...]:
         fit, hum = self.block.fit, self.block.hum[self.channel]
         first = float(abs(amplitudes[0]))
         if first == 0.0:
             return ()
         mains_hz = hum.frequency_hz if hum else None
-        angles = np.angle(amplitudes)
-        turn = float(angles[0]) + math.pi / 2.0
-        heights = np.abs(amplitudes) / first
-        spreads = np.sqrt(line_noise) / first
-        seen = heights >= np.maximum(math.sqrt(2.0 * _SEEN) * spreads, _ROUNDING)
-        phases = np.remainder(angles + (1.5 * math.pi - self.block.orders * turn), 2.0 * math.pi) - math.pi
-        rows = zip(fit.model.orders, *(a.tolist() for a in (counted, seen, heights, spreads, phases)), strict=True)
+        turn = float(np.angle(amplitudes[0])) + math.pi / 2.0
+        chosen = amplitudes[counted]
+        angles = np.arctan2(chosen.imag, chosen.real)
+        heights = np.abs(chosen) / first
+        spreads = np.sqrt(line_noise[counted]) / first
+        phases = np.remainder(angles + (1.5 * math.pi - self.block.orders[counted] * turn), 2.0 * math.pi) - math.pi
+        rows = zip(fit.model.orders[counted], heights.tolist(), spreads.tolist(), phases.tolist(), strict=True)
         found = []
-        for order, is_counted, is_seen, height, u, phase in rows:
-            if not is_counted:
-                continue
+        for order, height, u, phase in rows:
+            is_seen = height >= _SEEN * u and height >= _ROUNDING
             frequency_hz = order * fit.frequency_hz
             remark = None if is_seen else Remark.NOT_SEEN
             if is_seen and contains_mains(frequency_hz, mains_hz, fit.seconds):

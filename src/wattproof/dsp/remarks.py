@@ -11,7 +11,7 @@ from wattproof.dsp.start import Line, hann_spectrum, line_near
 
 ABOVE_HZ = 20_000.0
 CARRIER_RATIO = 0.01  # −40 dB of the fundamental
-_WIDE = 3  # bins to each side of a harmonic that belong to it
+_WIDE = 8  # bins to each side of a harmonic that belong to it: beyond, the taper leaves −45 dB of it
 _CLEAR = 10.0**1.5  # a second tone stands 15 dB over the noise in its own bandwidth
 _HANN_NOISE_BINS = 1.5
 _BESIDE_BINS = 5  # bins, and Hz, to each side of a harmonic where a moving level leaves something of it
@@ -30,7 +30,7 @@ def carrier_note(block: Block, channel: int) -> Note | None:
         return None
     fundamental = float(abs(fit.coefficients[channel, 0]) ** 2) / 2.0
     limit = CARRIER_RATIO**2 * fundamental
-    if not fundamental or float(power[first:].sum()) <= limit:
+    if not fundamental or float(np.add.reduce(power[first:])) <= limit:
         return None
     above = power[first:].copy()
     orders = np.arange(int(ABOVE_HZ / fit.frequency_hz), int(block.rate_hz / 2.0 / fit.frequency_hz) + 1)
@@ -45,7 +45,9 @@ def carrier_note(block: Block, channel: int) -> Note | None:
 def lines_beside(block: Block, channel: int, low_hz: float, high_hz: float) -> tuple[Line, ...]:
     """Return the clearest lines in the band that are neither harmonic nor hum, strongest first, five at the most."""
     high_hz = min(high_hz, 0.49 * block.rate_hz)
-    spectrum = hann_spectrum(block.left[channel].ravel(), block.rate_hz, low_hz, high_hz)
+    spectrum = hann_spectrum(block.left[channel].ravel(), block.rate_hz)
+    if not spectrum.holds(low_hz, high_hz):
+        return ()
     first = float(abs(block.fit.coefficients[channel, 0]))
     power = spectrum.power
     orders = np.array((0, *block.fit.model.orders), dtype=np.float64)

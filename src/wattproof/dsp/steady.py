@@ -2,14 +2,17 @@
 
 import attrs
 import numpy as np
+from numpy.typing import NDArray
 
 from wattproof.core.notes import Kind, Note, note
 from wattproof.core.signal import Samples
 from wattproof.core.units import DB_PER_RELATIVE
 from wattproof.dsp.subblocks import SubBlocks, sub_blocks, width_for
 
-_STEP = 0.02  # relative change of level, or phase in rad, from piece to piece that ends a steady part
+_STEP = 0.004  # relative change of level, or phase in rad, from piece to piece that ends a steady part
 _NOISE_FACTOR = 8.0  # such a change must also stand this far over the typical change
+_KINK = 4e-4  # a smaller bend of the level over three pieces leaves less than −70 dB in the residual
+_KINK_FACTOR = 12.0  # and this far over the typical bend stands no noise: eight standard deviations
 _MARGIN_S = 0.05  # a tone that starts or ends within this of the recording's edge is neither late nor early
 _FAINT = 0.03  # pieces below this share of the loudest are taken for silence
 
@@ -36,6 +39,19 @@ def _allowed(changes: Samples) -> float:
     return max(_STEP, _NOISE_FACTOR * typical)
 
 
+def _kinked(changes: Samples, joined: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """Tell of each change whether the level kinks there: a step too small to be a jump, but not to spoil a reading."""
+    kinks = np.abs(np.diff(changes))
+    smooth = joined[1:] & joined[:-1]
+    if not smooth.any():
+        return np.zeros_like(joined)
+    bent = smooth & (kinks > max(_KINK, _KINK_FACTOR * float(np.median(kinks[smooth]))))
+    kinked = np.zeros_like(joined)
+    kinked[:-1] = bent
+    kinked[1:] |= bent
+    return kinked
+
+
 def _note_between(pieces: SubBlocks, before: bool, inside: int, outside: int) -> Note:  # noqa: FBT001
     """Say what ends the steady part between the pieces `inside` and `outside` it."""
     at_s = max(inside, outside) * pieces.hop / pieces.rate_hz
@@ -44,7 +60,7 @@ def _note_between(pieces: SubBlocks, before: bool, inside: int, outside: int) ->
     silent = np.abs(pieces.amplitude[outside]) < _FAINT * np.abs(pieces.amplitude[inside])
     if silent:
         return note(Kind.STARTS_LATE if before else Kind.ENDS_EARLY, at_s=at_s)
-    if abs(change) > _STEP:
+    if abs(change) > _KINK:
         return note(Kind.LEVEL_STEP, at_s=at_s, db=change * DB_PER_RELATIVE)
     return note(Kind.BREAK, at_s=at_s)
 
@@ -52,8 +68,9 @@ def _note_between(pieces: SubBlocks, before: bool, inside: int, outside: int) ->
 def find_steady(samples: Samples, rate_hz: float, frequency_hz: float) -> Steady:
     """Return the longest steady part of samples, shape (frames,), that hold a tone near frequency_hz.
 
-    A part ends where level or phase jump from one piece (10 ms or 4 cycles) to the next by more than 2 %, 0.02 rad or
-    eight times what is typical. A recording shorter than a few pieces is taken as it stands.
+    A part ends where level or phase jump from one piece (10 ms or 4 cycles) to the next by more than 0.4 %, 0.004 rad
+    or eight times what is typical, or where the level kinks by more than 0.04 % and twelve times what is typical. A
+    recording shorter than a few pieces is taken as it stands.
     """
     width = width_for(frequency_hz, rate_hz)
     pieces = sub_blocks(samples, rate_hz, frequency_hz, width)
@@ -69,6 +86,7 @@ def find_steady(samples: Samples, rate_hz: float, frequency_hz: float) -> Steady
     drift = float(np.median(turns[both]))
     straight = np.abs(np.angle(np.exp(1j * (turns - drift))))
     joined = both & (np.abs(changes) <= _allowed(changes[both])) & (straight <= _allowed(straight[both]))
+    joined &= ~_kinked(changes, joined)
     runs = [run for run in _runs(joined) if loud[run[0]]]
     first, last = max(runs, key=lambda run: (run[1] - run[0], float(strength[run[0]])))
     return _with_margins(pieces, first, last, samples.size)
@@ -84,9 +102,9 @@ def _with_margins(pieces: SubBlocks, first: int, last: int, frames: int) -> Stea
         begin, end = first * hop, min(frames, last * hop + pieces.width)
     notes = []
     if not at_start and begin > margin:
-        notes.append(_note_between(pieces, before=True, inside=min(first + 1, last), outside=max(0, first - 2)))
+        notes.append(_note_between(pieces, before=True, inside=min(first + 1, last), outside=max(0, first - 3)))
     if not at_end and frames - end > margin:
-        notes.append(_note_between(pieces, before=False, inside=max(first, last - 1), outside=min(count - 1, last + 2)))
+        notes.append(_note_between(pieces, before=False, inside=max(first, last - 1), outside=min(count - 1, last + 3)))
     return Steady(begin, end - begin, tuple(notes))
 
 

@@ -38,7 +38,8 @@ class SubBlocks:
     @property
     def turns(self) -> Samples:
         """Phase from each piece to the next, in rad, shape (pieces − 1,)."""
-        return np.angle(self.amplitude[1:] * self.amplitude[:-1].conj())
+        step = self.amplitude[1:] * self.amplitude[:-1].conj()
+        return np.arctan2(step.imag, step.real)
 
 
 def width_for(frequency_hz: float, rate_hz: float, shortest_s: float = SHORTEST_S) -> int:
@@ -57,15 +58,17 @@ def sub_blocks(samples: Samples, rate_hz: float, frequency_hz: float, width: int
     rows = samples.size // hop
     if rows < 2:
         return SubBlocks(np.zeros(0, dtype=np.complex128), width, rate_hz)
-    cycles, weights, turn = _carrier(hop, round(frequency_hz / rate_hz, 9))
+    weights, turns = _carrier(hop, rows, round(frequency_hz / rate_hz, 9))
     halves = (samples[: rows * hop].reshape(rows, hop) @ weights).view(np.complex128)
-    halves *= unit_phasors(np.arange(rows, dtype=np.float64), cycles * hop).conj()[:, None]
-    return SubBlocks((halves[:-1, 0] + halves[1:, 1]) * turn, width, rate_hz)
+    halves *= turns
+    return SubBlocks(halves[:-1, 0] + halves[1:, 1], width, rate_hz)
 
 
 @lru_cache(maxsize=16)
-def _carrier(hop: int, cycles: float) -> tuple[float, Matrix, float]:
-    """Return the carrier's cycles per frame, its rising and falling Hann halves (hop, 4), and their scale."""
+def _carrier(hop: int, rows: int, cycles: float) -> tuple[Matrix, NDArray[np.complex128]]:
+    """Return the carrier in rising and falling Hann halves (hop, 4), and its scaled turns from row to row (rows, 1)."""
     carrier = unit_phasors(np.arange(hop, dtype=np.float64), cycles).conj()
     rise = 0.5 - 0.5 * np.cos(np.pi * np.arange(hop) / hop)
-    return cycles, np.stack([rise * carrier, (1.0 - rise) * carrier], axis=1).view(np.float64), 2.0 / hop
+    weights = np.stack([rise * carrier, (1.0 - rise) * carrier], axis=1).view(np.float64)
+    turns = unit_phasors(np.arange(rows, dtype=np.float64), cycles * hop).conj()[:, None]
+    return weights, turns * (2.0 / hop)

@@ -14,18 +14,19 @@ from wattproof.dsp.model import Matrix, Model
 from wattproof.dsp.overload import judge_overload
 from wattproof.dsp.reading import TONE_OVER_NOISE, ChannelReader
 from wattproof.dsp.remarks import carrier_note, lines_beside, second_tone_note
-from wattproof.dsp.start import Line, Spectrum, hann_spectrum, line_near
+from wattproof.dsp.start import Line, Spectrum, hann_spectrum, highest_tone_hz, line_near
 from wattproof.dsp.steady import find_steady, movement
 
 LEAST_CYCLES = 3.0
 LEAST_FRAMES = 256
 MOST_FRAMES = 1 << 20  # one fit takes 11 s at 96 kHz; more would ask the tone's clock to hold still for longer
 MOST_ORDERS = 1000  # the harmonics of 20 Hz up to 20 kHz
-_WHOLE_ORDERS = 60  # a fit with this few orders goes on to half the rate, so that nothing beyond the band leaks back
+_WHOLE_ORDERS = 100  # a fit with this few orders goes on to half the rate, so that nothing beyond the band leaks back
 _UNSTEADY_RELATIVE = 0.12  # 1 dB: a level that ranges wider has no one value
 _UNSTEADY_RAD = 0.5  # and a phase that wanders wider has no one frequency
 _MOVES_RELATIVE = 0.0115  # 0.1 dB: said, but read
 _RAMP_GAIN = 0.9  # a cubic ramp is taken where it leaves less than this share of the linear ramp's noise power
+_FOREIGN = 1e-3  # a line of −60 dB leans on its neighbours by −110 dB and less
 _HUM_TONE = 0.01  # a line at a low multiple of the mains is taken for a tone from −40 dBFS up
 _HUM_NUMBERS = 6
 
@@ -100,11 +101,12 @@ class _RecordedChannel:
     def _tone(self, samples: Samples) -> _Tone | Note:
         """Return the tone to read, or why there is none."""
         least_hz = LEAST_CYCLES * self._rate_hz / samples.size
-        spectrum = hann_spectrum(samples, self._rate_hz, self.settings.low_hz, self.settings.high_hz)
+        spectrum = hann_spectrum(samples, self._rate_hz)
         top = self._rate_hz / 2.0 - 2.0 * spectrum.bin_hz
-        strongest = line_near(spectrum, min(least_hz, top / 2), top)
         if self.fundamental_hz is not None:
-            return self._given(spectrum, strongest, self.fundamental_hz)
+            return self._given(spectrum, line_near(spectrum, min(least_hz, top / 2), top), self.fundamental_hz)
+        top = min(top, highest_tone_hz(self.settings.high_hz, self._rate_hz))
+        strongest = line_near(spectrum, min(least_hz, top / 2), top)
         if strongest.over_noise < TONE_OVER_NOISE or strongest.amplitude == 0.0:
             return self._short_tone(samples) or note(Kind.NO_TONE)
         number = _mains_number(strongest.frequency_hz, spectrum.bin_hz)
@@ -118,7 +120,8 @@ class _RecordedChannel:
             line = line_near(spectrum, wanted_hz - reach, wanted_hz + reach)
         except ValueError:
             return note(Kind.NO_TONE)
-        if line.over_noise < TONE_OVER_NOISE or line.amplitude == 0.0:
+        skirt = abs(line.frequency_hz - wanted_hz) > reach  # of a stronger line outside
+        if skirt or line.over_noise < TONE_OVER_NOISE or line.amplitude == 0.0:
             return note(Kind.NO_TONE)
         apart = abs(strongest.frequency_hz - line.frequency_hz) > reach
         if apart and strongest.amplitude > line.amplitude:
@@ -134,8 +137,10 @@ class _RecordedChannel:
                 break
             pieces = samples[: parts * length].reshape(parts, length)
             loudest = pieces[int(np.argmax(np.sum(pieces**2, axis=1)))]
-            spectrum = hann_spectrum(loudest, self._rate_hz, self.settings.low_hz, self.settings.high_hz)
-            top = self._rate_hz / 2.0 - 2.0 * spectrum.bin_hz
+            spectrum = hann_spectrum(loudest, self._rate_hz)
+            top = min(
+                self._rate_hz / 2.0 - 2.0 * spectrum.bin_hz, highest_tone_hz(self.settings.high_hz, self._rate_hz)
+            )
             line = line_near(spectrum, min(LEAST_CYCLES * self._rate_hz / length, top / 2), top)
             if line.over_noise >= TONE_OVER_NOISE and line.amplitude >= _HUM_TONE / 10.0:
                 return _Tone(line.frequency_hz)
@@ -162,24 +167,43 @@ class _RecordedChannel:
 
     def _restarted(self, part: Samples, near_hz: float) -> float:
         """Return the frequency of the tone in the steady part alone, for the fit to start from."""
-        spectrum = hann_spectrum(part, self._rate_hz, self.settings.low_hz, self.settings.high_hz)
+        spectrum = hann_spectrum(part, self._rate_hz)
         reach = max(2.0 * spectrum.bin_hz, 1e-3 * near_hz)
         return line_near(spectrum, max(near_hz - reach, spectrum.bin_hz), near_hz + reach).frequency_hz
 
     def _analysed(self, block: Matrix, start_hz: float) -> Block:
         analysis = analysed(block, self._fitted(block, start_hz, ramp=1))
-        if self._bends(analysis):
-            analysis = analysed(block, self._fitted(block, analysis.fit.frequency_hz, ramp=3))
         hum = self._hum(analysis.left, analysis)
-        if hum is None or not hum.numbers or hum.waveform is None:
+        foreign = self._foreign(attrs.evolve(analysis, hum=(hum,)))
+        lines = _sum(foreign, _waveform(hum))
+        if lines is not None:
+            analysis = self._without(block, lines, analysis)
+        if self._bends(analysis):
+            analysis = self._without(block, lines, analysis, ramp=3)
+        if lines is None:
             return attrs.evolve(analysis, hum=(hum,))
-        # lines of hum lean on the harmonics beside them, so the tone is fitted again without them
-        clean = block - hum.waveform
-        again = analysed(clean, self._fitted(clean, analysis.fit.frequency_hz, analysis.fit.model.ramp))
-        with_hum = again.left + hum.waveform
-        better = self._hum(with_hum, again) or hum
-        left = with_hum if better.waveform is None else with_hum - better.waveform
-        return analysed(block, again.fit, left=left, hum=better)
+        hum = self._hum(analysis.left if foreign is None else analysis.left - foreign, analysis)
+        wave = _waveform(hum)
+        return analysed(block, analysis.fit, left=analysis.left if wave is None else analysis.left - wave, hum=hum)
+
+    def _without(self, block: Matrix, lines: Matrix | None, last: Block, ramp: int | None = None) -> Block:
+        """Fit again without lines that lean on the harmonics beside them; they go back into what is left."""
+        clean = block if lines is None else block - lines
+        fit = self._fitted(clean, last.fit.frequency_hz, ramp or last.fit.model.ramp)
+        return analysed(block, fit)
+
+    def _foreign(self, analysis: Block) -> Matrix | None:
+        """Return the waveform of strong lines that are no harmonic, in the band or above it; None if there are none."""
+        first = float(abs(analysis.fit.coefficients[0, 0]))
+        hum = _waveform(analysis.hum[0])
+        rest, taken = analysis.left if hum is None else analysis.left - hum, None
+        for line in lines_beside(analysis, 0, self.settings.low_hz, self._rate_hz / 2.0):
+            if line.amplitude < _FOREIGN * first:
+                continue
+            fit = fit_block(rest, self._rate_hz, line.frequency_hz, Model((1,), 1, 1))
+            wave = fit.waveform(trend=False)
+            rest, taken = rest - wave, _sum(taken, wave)
+        return taken
 
     def _bends(self, analysis: Block) -> bool:
         """Tell whether level or phase bend within the block: a cubic ramp takes a tenth of what a linear one left."""
@@ -237,6 +261,14 @@ class _RecordedChannel:
 def _power_in_band(analysis: Block, settings: ReadingSettings) -> float:
     spectrum = analysis.spectrum
     return float(spectrum.power[0, spectrum.bins(*settings.band_hz)].sum())
+
+
+def _waveform(hum: Hum | None) -> Matrix | None:
+    return hum.waveform if hum is not None and hum.numbers else None
+
+
+def _sum(lines: Matrix | None, more: Matrix | None) -> Matrix | None:
+    return lines if more is None else more if lines is None else lines + more
 
 
 def _moves(relative: float, span: Span) -> Note:

@@ -8,7 +8,7 @@ import attrs
 from wattproof.core.notes import Note
 from wattproof.core.reading import Reading
 from wattproof.core.run import Ending
-from wattproof.procedures.requests import Ask, Shown
+from wattproof.procedures.requests import Ask, Kept, Progress, Said, Shown
 
 
 @attrs.frozen(eq=False)
@@ -24,6 +24,34 @@ class Asked:
 
     ask_id: int
     ask: Ask
+
+
+@attrs.frozen
+class Prompted:
+    """A person may do something while the tone sounds; nobody waits for an answer."""
+
+    ask: Ask
+
+
+@attrs.frozen(eq=False)
+class ReadingKept:
+    """A reading was kept, and what for."""
+
+    kept: Kept
+
+
+@attrs.frozen
+class Told:
+    """The procedure found something out."""
+
+    said: Said
+
+
+@attrs.frozen
+class Progressed:
+    """How far the procedure is."""
+
+    progress: Progress
 
 
 @attrs.frozen
@@ -51,7 +79,7 @@ class Ended:
     why: str = ""
 
 
-Event = ReadingsTaken | Asked | Refused | ToneChanged | Ended
+Event = ReadingsTaken | Asked | Prompted | ReadingKept | Told | Progressed | Refused | ToneChanged | Ended
 
 
 class Screen:
