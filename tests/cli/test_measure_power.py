@@ -127,3 +127,16 @@ def test_ctrl_c_leaves_silence_and_prints_what_was_kept() -> None:
     assert (made["ending"], made["why"]) == ("stopped", "stopped by the keyboard")
     assert len(made["curve"]) > 0
     assert len(err.splitlines()) == 1
+
+
+def test_a_recording_is_followed_as_if_it_were_live_and_drives_nothing(capfd: pytest.CaptureFixture[str]) -> None:
+    file = str(Path(__file__).parents[2] / "demo_recordings" / "01-tag-31-healthy.flac")
+    assert call("measure", "power", "--bench", file, "--full-scale-vrms", "40") == 2
+    assert "no output to drive" in capfd.readouterr().err
+    assert call("measure", "power-by-hand", "--bench", file) == 2
+    assert "--full-scale-vrms" in capfd.readouterr().err
+    status = call("measure", "power-by-hand", "--bench", file, "--full-scale-vrms", "40", "--json")
+    made = json.loads(capfd.readouterr().out)
+    assert (status, made["ending"]) == (1, "failed")  # it is over before the control was turned
+    assert "ended" in made["why"] or "end" in made["why"]
+    assert made["curve"][0]["voltage_vrms"] == pytest.approx(12.649, rel=1e-3, abs=0.0)  # −10 dB of 40 V

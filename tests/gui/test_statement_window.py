@@ -127,7 +127,7 @@ def test_by_hand_from_the_list_to_the_sentence(desk_window: "Window", bench_runn
     for name, thdn in (("1 %", 0.01), ("10 %", 0.10)):
         volts = points[name].voltage_vrms
         assert volts is not None
-        # 0.02 dB, or the statement's own 2u: issue 5, hand strokes up to 6 dB/s
+        # 0.02 dB, or the own 2u: what is asked of hand strokes up to 6 dB/s
         assert volts.value == pytest.approx(truth.vrms_at_thdn(thdn), rel=0.0023, abs=2.0 * volts.u)
     assert [mark.name for mark in desk.trail.marks] == ["onset", "1 %", "10 %"]
     assert desk.trail.beside, "the stroke up is still to be seen beside the one down"

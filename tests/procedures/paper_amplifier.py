@@ -36,7 +36,8 @@ class Paper:
     """A hard clipper of voltage gain `gain` that clips at `clip_vrms` into 8 Ω, with noise and two channels.
 
     `output_ohm` lets the level depend on the load. `deaf_from_fs`: from this drive on it is silent, as a protection
-    that tripped; `here` is what a person would have said.
+    that tripped; `here` is what a person would have said. The volume control stands at `knob_db` and is turned by
+    `knob_db_per_s` when a prompt says so, no further than `knob_top_db`; at `dead_at_db` on its way the output dies.
     """
 
     gain: float = 30.0
@@ -45,6 +46,10 @@ class Paper:
     output_ohm: float = 0.08
     load_ohm: float = 8.0
     deaf_from_fs: float = math.inf
+    knob_db: float = 0.0
+    knob_db_per_s: float = 6.0
+    knob_top_db: float = 0.0
+    dead_at_db: float = math.inf
     level_fs: float = 0.0
     outputs: tuple[int, ...] = ()
     here: int = 0
@@ -58,6 +63,7 @@ class Paper:
     spells_s: list[float] = attrs.field(factory=list)  # how long each level stood before the next was played
     now: int = 0
     _since: int = 0
+    _turning: float = 0.0
 
     def place(self, *, rated_w: float | None = 100.0, limit_fs: float = 0.5) -> Place:
         load = Load(nominal_ohm=8.0, rated_w=rated_w)
@@ -90,13 +96,15 @@ class Paper:
                 self.played.append(tone.level_fs)
                 return self.now
             case Acquire(frames=frames, hop=hop, settle_s=settle_s):
-                del hop
                 self.now += round(settle_s * RATE_HZ)
-                capture = Capture(np.zeros((frames, 2)), RATE_HZ, self.now)
-                self.now += frames
-                return capture
+                self._turn(frames / RATE_HZ if hop is None else max(hop, 1) / RATE_HZ)
+                first = self.now if hop is None else self.now - frames + max(hop, 1)
+                self.now = first + frames
+                return Capture(np.zeros((frames, 2)), RATE_HZ, first)
             case Ask() as ask:
                 self.asked.append((ask, self.level_fs))
+                if ask.want == "down":
+                    self.knob_db = -45.0
                 if ask.action == "switch_load":
                     self.load_ohm = float(ask.want)
                 return self.answer
@@ -113,17 +121,21 @@ class Paper:
                 self.progress.append(item)
             case Prompt(ask):
                 self.prompts.append(ask)
-                self.here += self.answers_here
+                self.here += self.answers_here and ask.want == "here"
+                self._turning = {"up": 1.0, "back": -1.0}.get(str(ask.want), 0.0) * self.knob_db_per_s
             case Shown():
                 pass
             case _:
                 raise AssertionError(item)
 
+    def _turn(self, seconds: float) -> None:
+        self.knob_db = min(self.knob_db + self._turning * seconds, self.knob_top_db)
+
     def delivered(self, level_fs: float) -> tuple[float, float, float]:
         """Return (total V rms, THD, noise ratio) at a drive: a sine clipped hard, in closed form."""
         share = self.load_ohm / (self.load_ohm + self.output_ohm)
-        wanted = level_fs * FULL_SCALE_VRMS * self.gain * share
-        if level_fs >= self.deaf_from_fs:
+        wanted = level_fs * FULL_SCALE_VRMS * self.gain * share * 10.0 ** (self.knob_db / 20.0)
+        if level_fs >= self.deaf_from_fs or self.knob_db >= self.dead_at_db:
             wanted = 0.0
         height = wanted / self.clip_vrms
         if height <= 1.0:

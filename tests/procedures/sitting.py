@@ -46,12 +46,12 @@ def result(
 PLANS: Mapping[str, tuple[AroundPlan, Mapping[str, float], str]] = MappingProxyType({
     "idle": (IdlePlan(seconds=4.0, output_vrms=8.0), {}, "class-d-bridge"),
     "response": (
-        ResponsePlan(channels="1", loads="8,4", loop=True, per_octave=0.4, from_hz=100.0, level_vrms=1.5),
+        ResponsePlan(channels="1", loads="8,4", loop=True, per_octave=0.25, level_vrms=1.5),
         {"filter": 1.0},
         "class-d-bridge",
     ),
     "sweep": (
-        ResponsePlan(channels="1", loop=True, method=Method.SWEEP, from_hz=40.0, to_hz=21_000.0, level_vrms=2.0),
+        ResponsePlan(channels="1", method=Method.SWEEP, from_hz=40.0, to_hz=21_000.0, level_vrms=2.0),
         {"bass": 6.0},
         "class-a-single",
     ),

@@ -80,6 +80,9 @@ class Person:
         if around is not None and ask.action is Action.CONFIRM and self.at_terminal:
             self._runner.answer(ask_id, click.prompt(around, err=True, type=str))
             return
+        if around is None and self._nobody_needed:  # a recording: what was asked for was done when it was made
+            self._runner.answer(ask_id, YES if ask.action is Action.CONFIRM else DONE)
+            return
         if ask.action is Action.CONFIRM and around is None and self._confirmation.complete:
             self._runner.answer(ask_id, YES)
             return

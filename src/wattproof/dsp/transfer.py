@@ -12,7 +12,7 @@ from wattproof.dsp.band import line_noise, noise_spectrum
 from wattproof.dsp.fit import EXACT_PHASE_RAD, block_of, fit_block
 from wattproof.dsp.model import Matrix, Model
 
-FEW_CYCLES = 5.0  # below them a cubic trend would take from the tone
+FEW_CYCLES = 2.5  # below them a cubic trend, which takes the settling of couplings, would take from the tone
 MOST_ORDERS = 8  # harmonics that are fitted beside it, so that none of them leaks into it
 SAME_CLOCK = 2e-6  # relative: further apart output and input do not share a clock, and the phase has no meaning
 CLOCK_CYCLES = 50.0  # fewer tell nothing of the clocks: what a coupling still settles bends the frequency

@@ -46,6 +46,7 @@ Doing = Generator[Request | Record, Answer, Result]
 
 METER = "meter"  # what a Confirm wants whose answer is the AC voltage that the meter shows
 SWEEP_FROM_HZ = 5.0  # an octave below the response's first point
+MOST_SWEEPS = 5
 RESPONSE_FROM_HZ = 10.0
 BAND_END = 0.45  # of the rate, where the filters of converters begin
 SETTLE_S = 0.3  # couplings of an interface: common practice, no source
@@ -192,15 +193,26 @@ class Calibrating:
         sweep = Sweep(
             SWEEP_FROM_HZ, self._top_fs / 2.0, self._outputs, end_hz=end_hz * 1.05, seconds=self._plan.sweep_s
         )
-        yield from self._silence()
-        yield Play(sweep)
-        samples = yield from self._samples(self._plan.sweep_s + TAIL_S, 0.0)
+        samples = yield from self._swept(sweep)
         played = sweep_samples(sweep, self._rate_hz)
         for join in self.findings.joins:
             column = np.ascontiguousarray(samples[:, join.input - 1])
             path = path_of(column, played, self._rate_hz, RESPONSE_FROM_HZ, end_hz)
             check_path(join, inverted=path.inverted, echo=path.echo)
             self.findings.paths[join.input] = path
+
+    def _swept(self, sweep: Sweep) -> Doing[Samples]:
+        """Play the sweep until it is captured from its beginning: behind a refused block there is but silence."""
+        for _ in range(MOST_SWEEPS):
+            yield from self._silence()
+            begins = yield Play(sweep)
+            assert isinstance(begins, int)  # noqa: S101 - the answer that a Play has by contract
+            capture = yield from self._captured(self._plan.sweep_s + TAIL_S, 0.0)
+            if capture.first_frame <= begins:
+                return capture.samples
+        raise WattproofError(
+            f"no sweep of {MOST_SWEEPS} came back whole; close what else uses the interface, and calibrate anew"
+        )
 
     def _listen(self) -> Doing[None]:
         yield from self._begin(Step.NOISE)
@@ -277,6 +289,9 @@ class Calibrating:
         yield Play(Tone(self._plan.frequency_hz, 0.0, self._outputs))
 
     def _samples(self, seconds: float, settle_s: float) -> Doing[Samples]:
+        return (yield from self._captured(seconds, settle_s)).samples
+
+    def _captured(self, seconds: float, settle_s: float) -> Doing[Capture]:
         capture = yield Acquire(round(seconds * self._rate_hz), None, settle_s)
         assert isinstance(capture, Capture)  # noqa: S101 - the answer that an Acquire has by contract
         if capture.gaps:
@@ -287,7 +302,7 @@ class Calibrating:
             raise WattproofError(
                 f"input {capture.overloads[0].channel} is overloaded by the loop; turn its gain down, or drive it less"
             )
-        return capture.samples
+        return capture
 
 
 def _sound(reading: Reading) -> Reading:

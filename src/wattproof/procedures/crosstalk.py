@@ -19,7 +19,7 @@ from wattproof.procedures.driving import Muted
 from wattproof.procedures.power_rows import Row, rows_of
 from wattproof.procedures.power_switching import FULL, begin
 from wattproof.procedures.requests import Action, Ask, Kept, Mark, Procedure, Role, Said
-from wattproof.procedures.stepping import Stepping, bursts_said, gain_of, in_bursts
+from wattproof.procedures.stepping import Stepping, bursts_said, gain_of, in_bursts, said_notes
 from wattproof.procedures.terminals import full_scale_volts
 
 UNDRIVEN = "terminated undriven"  # what a CONNECT wants: the input of the channel that is not driven
@@ -108,6 +108,7 @@ class CrosstalkResult:
 
     plan: CrosstalkPlan
     ways: tuple[CrosstalkWay, ...]
+    said: tuple[Note, ...] = ()
 
 
 def conclude(plan: CrosstalkPlan, place: AroundPlace, records: Sequence[Kept | Said]) -> CrosstalkResult:
@@ -124,7 +125,7 @@ def conclude(plan: CrosstalkPlan, place: AroundPlace, records: Sequence[Kept | S
         points = sorted((_point(plan, place, row, other, kept) for kept in own), key=lambda point: point.frequency_hz)
         said = tuple(each.note for each in records if isinstance(each, Said) and each.row == row.index)
         ways.append(CrosstalkWay(row, other, tuple(points), (*said, *_notes(place, row, other, points))))
-    return CrosstalkResult(plan, tuple(ways))
+    return CrosstalkResult(plan, tuple(ways), said_notes(records))
 
 
 def _point(plan: CrosstalkPlan, place: AroundPlace, row: Row, other: Row, kept: Kept) -> CrosstalkPoint:

@@ -64,6 +64,8 @@ class Muted(Exception):  # noqa: N818 - it is no error: the tone was silenced fo
 class Driving:
     """The drive and the readings of one procedure. Each method that yields is a part of the procedure's generator."""
 
+    cycles = _CYCLES
+
     def __init__(self, plan: PowerPlan, place: Place, row: Row) -> None:
         self.plan, self.place, self.row = plan, place, row
         self.level_fs = 0.0
@@ -104,6 +106,10 @@ class Driving:
             Muted: the guard silenced the tone on the way.
         """
         level_fs = min(level_fs, self.ceiling_fs)
+        if not self.row.outputs:  # a recording: its tone was played long ago, and may be of any frequency
+            self.reader.restart(None)
+            self.level_fs = level_fs
+            return
         if self.level_fs == 0.0:
             self.reader.restart(self.plan.frequency_hz)
             yield from self._play(min(level_fs, START_FS))
@@ -230,7 +236,7 @@ class Driving:
         self.level_fs, self._since_play_s = level_fs, 0.0
 
     def _block(self, seconds: float, settle_s: float) -> Doing[Reading]:
-        frames = round(max(seconds, _CYCLES / self.plan.frequency_hz) * self.place.rate_hz)
+        frames = round(max(seconds, self.cycles / self.plan.frequency_hz) * self.place.rate_hz)
         capture = yield Acquire(frames, None, settle_s)
         assert isinstance(capture, Capture)  # noqa: S101 - the answer that an Acquire has by contract
         readings, picture = self.taken(capture)

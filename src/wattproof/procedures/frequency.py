@@ -18,7 +18,7 @@ from wattproof.procedures.power_plan import BURST_BELOW_HZ
 from wattproof.procedures.power_rows import Row, rows_of
 from wattproof.procedures.power_switching import FULL, begin, switch
 from wattproof.procedures.requests import Kept, Mark, Procedure, Role, Said
-from wattproof.procedures.stepping import RAISE, Stepping, bursts_said, in_bursts
+from wattproof.procedures.stepping import RAISE, Stepping, bursts_said, in_bursts, said_notes
 
 STEERS = 5
 BAND_END = 0.45  # of the rate
@@ -135,6 +135,7 @@ class FrequencyResult:
 
     plan: FrequencyPlan
     curves: tuple[FrequencyCurve, ...]
+    said: tuple[Note, ...] = ()
 
 
 def conclude(plan: FrequencyPlan, place: AroundPlace, records: Sequence[Kept | Said]) -> FrequencyResult:
@@ -150,7 +151,7 @@ def conclude(plan: FrequencyPlan, place: AroundPlace, records: Sequence[Kept | S
         points = tuple(_point(plan, place, hz, kept) for hz, kept in sorted(last.items()))
         said = tuple(each.note for each in records if isinstance(each, Said) and each.row in {row.index, 0})
         curves.append(FrequencyCurve(row, points, (*said, *_notes(plan, points))))
-    return FrequencyResult(plan, tuple(curves))
+    return FrequencyResult(plan, tuple(curves), said_notes(records))
 
 
 def _point(plan: FrequencyPlan, place: AroundPlace, hz: float, kept: Kept) -> FrequencyPoint:

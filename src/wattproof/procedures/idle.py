@@ -36,7 +36,7 @@ from wattproof.procedures.requests import (
     Role,
     Said,
 )
-from wattproof.procedures.stepping import Stepping
+from wattproof.procedures.stepping import Stepping, said_notes
 from wattproof.procedures.terminals import full_scale_volts
 
 CHECK_S, CHECK_SETTLE_S = 0.5, 0.2
@@ -185,6 +185,7 @@ class IdleResult:
 
     plan: IdlePlan
     channels: tuple[IdleChannel, ...]
+    said: tuple[Note, ...] = ()
 
 
 def conclude(plan: IdlePlan, place: AroundPlace, records: Sequence[Kept | Said]) -> IdleResult:
@@ -196,7 +197,7 @@ def conclude(plan: IdlePlan, place: AroundPlace, records: Sequence[Kept | Said])
         said = tuple(each.note for each in records if isinstance(each, Said) and each.row == row.index)
         if own is not None:
             found.append(_Concluding(plan, place, row, own).channel(said))
-    return IdleResult(plan, tuple(found))
+    return IdleResult(plan, tuple(found), said_notes(records))
 
 
 @attrs.frozen(eq=False)

@@ -21,7 +21,7 @@ from wattproof.procedures.power_plan import numbers
 from wattproof.procedures.power_rows import OPEN_LOAD_OHM, Row, rows_of
 from wattproof.procedures.power_switching import FULL, REPEATS_DB, begin, switch
 from wattproof.procedures.requests import Kept, Mark, Procedure, Role, Said
-from wattproof.procedures.stepping import Stepping, bursts_said, gain_of, in_bursts
+from wattproof.procedures.stepping import Stepping, bursts_said, gain_of, in_bursts, said_notes
 
 AGAIN = "again"  # the first load once more, at the end: what has drifted meanwhile
 BAND_END = 0.45
@@ -142,6 +142,7 @@ class ImpedanceResult:
 
     plan: OutputResistancePlan
     curves: tuple[ImpedanceCurve, ...]
+    said: tuple[Note, ...] = ()
 
 
 def conclude(plan: OutputResistancePlan, place: AroundPlace, records: Sequence[Kept | Said]) -> ImpedanceResult:
@@ -155,7 +156,7 @@ def conclude(plan: OutputResistancePlan, place: AroundPlace, records: Sequence[K
         said = tuple(each.note for each in records if isinstance(each, Said) and each.row in {0, over.index})
         if curve is not None:
             curves.append(attrs.evolve(curve, notes=(*said, *curve.notes)))
-    return ImpedanceResult(plan, tuple(curves))
+    return ImpedanceResult(plan, tuple(curves), said_notes(records))
 
 
 def _measured(plan: OutputResistancePlan, over: Row, under: Row) -> tuple[Row, Row]:

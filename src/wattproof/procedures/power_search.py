@@ -11,6 +11,8 @@ from wattproof.dsp.onset import NoOnset, Onset, find_onset
 from wattproof.dsp.power_curve import Dominated, Point, curve_of, point_of
 
 _LEAST_SLOPE = 0.3  # d ln THD+N / d ln drive: flatter than that no trim is taken from
+_NEIGHBOUR = 1.06  # 0.5 dB: readings this far outside a bracket may still tell how the curve runs
+_INSIDE = 0.02  # of a bracket's width: a secant that comes nearer to an end has gone astray
 _ANY_SLOPE = 8.0  # a clipping amplifier's, where a bracket has no slope of its own any more
 
 
@@ -37,6 +39,10 @@ class Bracket:
         """Return the drive for a THD+N, straight in log-log, at least `inside` of the width away from both ends."""
         share = math.log(thdn / self.low_thdn) / math.log(self.high_thdn / self.low_thdn)
         return self.low_fs * math.exp(self.width * min(max(share, inside), 1.0 - inside))
+
+    def drive_beyond(self, thdn: float) -> float:
+        """Return the drive for a THD+N on the straight line in log-log through both, inside or outside of them."""
+        return self.low_fs * math.exp(math.log(thdn / self.low_thdn) / self.slope)
 
     def narrowed(self, drive_fs: float, given: float, thdn: float) -> "Bracket":
         """Return the bracket with a new reading of `given` at a drive as its lower or upper end."""
@@ -96,6 +102,25 @@ class Search:
             if low.thdn < thdn <= high.thdn and low_fs < high_fs:
                 return Bracket(low_fs, low.thdn, high_fs, high.thdn)
         return None
+
+    def drive_near(self, thdn: float) -> float | None:
+        """Return the drive for a THD+N by the secant of the two nearest readings, or the bracket's middle; or None.
+
+        The straight line across a bracket alone would come near from one side only, ever more slowly.
+        """
+        bracket = self.bracket(thdn)
+        if bracket is None:
+            return None
+        near = sorted(self._known, key=lambda pair: abs(math.log(pair[1].thdn / thdn)))
+        around = [pair for pair in near if bracket.low_fs / _NEIGHBOUR <= pair[0] <= bracket.high_fs * _NEIGHBOUR][:2]
+        (first_fs, first), (second_fs, second) = sorted(around, key=lambda pair: pair[0])
+        if second.thdn <= first.thdn or second_fs <= first_fs:
+            return bracket.drive_at(thdn)
+        wanted = Bracket(first_fs, first.thdn, second_fs, second.thdn).drive_beyond(thdn)
+        margin = math.exp(_INSIDE * bracket.width)
+        if bracket.low_fs * margin <= wanted <= bracket.high_fs / margin:
+            return wanted
+        return math.sqrt(bracket.low_fs * bracket.high_fs)
 
     def drive_at_voltage(self, vrms: float) -> float:
         """Return the drive that gives an output voltage, straight in log-log between the readings."""

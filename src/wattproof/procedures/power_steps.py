@@ -149,11 +149,11 @@ class _RowRun:
     def _refined(self, target: Target, thdn: float) -> Doing[None]:
         """Read nearer and nearer to a THD+N until a reading stands at it."""
         for _ in range(FINE_READINGS):
-            bracket = self.search.bracket(thdn)
-            if bracket is None:
+            drive_fs = self.search.drive_near(thdn)
+            if drive_fs is None:
                 return
             yield self._progress(note(Kind.LOOKING_CLOSER, named=target.name))
-            point = yield from self._read(bracket.drive_at(thdn), self.plan.read_s)
+            point = yield from self._read(drive_fs, self.plan.read_s)
             if point is None or abs(math.log(point.thdn / thdn)) < MET:
                 return
 

@@ -19,7 +19,7 @@ from wattproof.procedures.around_plan import REFERENCE_HZ, AroundPlace
 from wattproof.procedures.power_rows import Row, rows_of
 from wattproof.procedures.requests import Figure, Kept, Said
 from wattproof.procedures.response import FLAT, LOOP, SET, ResponsePlan
-from wattproof.procedures.stepping import Gain, gain_of
+from wattproof.procedures.stepping import Gain, gain_of, said_notes
 
 HALF_POWER = math.sqrt(0.5)
 PEAK_WORTH_DB = 0.1
@@ -29,6 +29,8 @@ _LONGEST_DELAY_S = 0.6
 # an octave of a sweep, its window at the bottom. Our own measurement against filters of closed form.
 _STEPPED_LIMITS, _STEPPED_LOW_LIMITS = (0.001, 0.01), (0.008, 0.08)
 _SWEPT_LIMITS, _SWEPT_LOW_LIMITS = (0.003, 0.05), (0.02, 0.2)
+_BISECTIONS = 40
+_BENT = 0.25  # of what the cubic lies off a straight line: how well the bend between two points is known
 _LOW_STEPPED_HZ, _LOW_SWEPT_HZ = 40.0, 50.0
 
 
@@ -76,6 +78,7 @@ class ResponseResult:
 
     plan: ResponsePlan
     curves: tuple[ResponseCurve, ...]
+    said: tuple[Note, ...] = ()
 
 
 def conclude(plan: ResponsePlan, place: AroundPlace, records: Sequence[Kept | Said]) -> ResponseResult:
@@ -90,7 +93,7 @@ def conclude(plan: ResponsePlan, place: AroundPlace, records: Sequence[Kept | Sa
         said = tuple(each.note for each in records if isinstance(each, Said) and each.row in {row.index, 0})
         if own:
             curves.append(_Curve(plan, place, row, own, socket_loops).made(said))
-    return ResponseResult(plan, tuple(curves))
+    return ResponseResult(plan, tuple(curves), said_notes(records))
 
 
 @attrs.define(eq=False)
@@ -324,25 +327,25 @@ def _crossing(outward: Sequence[ResponsePoint], at: float) -> Quantity | None:
 
 
 def _between(around: Sequence[ResponsePoint], inner: ResponsePoint, outer: ResponsePoint, at: float) -> Quantity:
-    """Return where a cubic through the points around (log frequency over level in dB) passes a level."""
-    levels = np.array([db(point.relative.value) for point in around])
-    places = np.array([math.log(point.frequency_hz) for point in around])
-    wanted = db(at)
-    place = 0.0
-    for i, place_i in enumerate(places):
-        others = np.delete(levels, i)
-        place += place_i * float(np.prod((wanted - others) / (levels[i] - others)))
-    ends = sorted((math.log(inner.frequency_hz), math.log(outer.frequency_hz)))
-    straight = np.interp(
-        -wanted,
-        [-db(inner.relative.value), -db(outer.relative.value)],
-        [math.log(inner.frequency_hz), math.log(outer.frequency_hz)],
-    )
-    if not ends[0] <= place <= ends[1]:
-        place = float(straight)
-    slope = (db(outer.relative.value) - db(inner.relative.value)) / (
-        math.log(outer.frequency_hz) - math.log(inner.frequency_hz)
-    )
+    """Return where a cubic through the points around (level in dB over log frequency) passes a level."""
+    places = [math.log(point.frequency_hz) for point in around]
+    levels = [db(point.relative.value) for point in around]
+    near, far = math.log(inner.frequency_hz), math.log(outer.frequency_hz)
+    near_db, far_db, wanted_db = db(inner.relative.value), db(outer.relative.value), db(at)
+    slope = (far_db - near_db) / (far - near)
+    straight = near + (wanted_db - near_db) / slope
+    for _ in range(_BISECTIONS):
+        middle = (near + far) / 2.0
+        near, far = (middle, far) if _cubic(places, levels, middle) >= wanted_db else (near, middle)
+    place = (near + far) / 2.0
     u_db = DB_PER_RELATIVE * max(inner.relative.u / inner.relative.value, outer.relative.u / outer.relative.value)
-    u = math.hypot(u_db / slope, 0.25 * (place - float(straight)))
-    return Quantity(math.exp(place), "Hz", (Part(STATISTICS, math.exp(place) * abs(u)),))
+    u = math.exp(place) * math.hypot(u_db / slope, _BENT * (place - straight))
+    return Quantity(math.exp(place), "Hz", (Part(STATISTICS, u),))
+
+
+def _cubic(places: Sequence[float], levels: Sequence[float], at: float) -> float:
+    """Return Lagrange's polynomial through the points, at a place."""
+    return math.fsum(
+        level * math.prod((at - other) / (place - other) for other in places if other != place)
+        for place, level in zip(places, levels, strict=True)
+    )

@@ -20,7 +20,7 @@ from wattproof.procedures.verdicts import claim_notes, flattering_notes
 
 SETTLED_MISS = 0.006  # 0.05 dB of level by which a hold may miss its point at the end, and still be carried to it
 LAST_READINGS = 3  # of a hold: their scatter says how well it stood
-_CARRIED = 0.2  # of what a held value was carried by the curve's slope: how well that slope is known
+_CARRIED = 0.5  # of what a held value was carried by the curve's slope: how well that slope is known
 
 
 @attrs.frozen

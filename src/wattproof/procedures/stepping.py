@@ -1,12 +1,12 @@
 """Drives under the same guard at one frequency after the other, and reads the complex gain beside each reading."""
 
 import math
+from collections.abc import Sequence
 
 import attrs
-import numpy as np
 
 from wattproof.core.errors import WattproofError
-from wattproof.core.notes import Kind, note
+from wattproof.core.notes import Kind, Note, note
 from wattproof.core.picture import Picture
 from wattproof.core.reading import Reading, ReadingSettings, State
 from wattproof.core.signal import Capture, Sweep, Tone
@@ -24,7 +24,9 @@ PLACE_KEPT_S = 4.0  # after a burst its level may sound again at once for so lon
 LOOK_S = 0.15
 RAISE = 4.0  # 12 dB at most from one look to the next while a level is sought
 REACHED = 0.003  # 0.026 dB: near enough to a level that was asked for
-LEAST_CYCLES = 4.0
+LEAST_CYCLES = 3.1  # three are the least that a reader takes; the rest of a burst is left for settling
+BEGINNING_S = 0.08  # of a burst: ramps, and what a bench takes to end it; what it took counts in the pause
+ROOM = 1.02  # of a tone's frequency: the band of a reader ends no lower
 QUIET_S = 0.5  # before a sweep: the longest way round, and the last tone's end in couplings
 _TRIES = 3
 _LOOKS = 16
@@ -38,12 +40,15 @@ def in_bursts(frequency_hz: float) -> bool:
 class Stepping(Driving):
     """The drive and the readings of a procedure that changes its frequency. It works on one row at a time."""
 
+    cycles = LEAST_CYCLES
+
     def __init__(self, plan: AroundPlan, place: AroundPlace, row: Row) -> None:
         super().__init__(plan.guarded(), place, row)
         self.around = plan
         self.capture: Capture | None = None
         self._zero = place.phase_from_zero
         self._origin = 0
+        self._stands = 0  # the frame from which the last tone, or the last silence, stands
         self._sounding_hz = 0.0
         self._loud_fs, self._loud_until_s = 0.0, -math.inf
         self.free = False  # a loop without an amplifier: nothing in it burns
@@ -53,10 +58,24 @@ class Stepping(Driving):
         super().take_row(row)
         self._loud_fs, self._loud_until_s = 0.0, -math.inf
 
+    def silence(self) -> Doing[None]:
+        """Ramp down, and remember when that was done."""
+        if self.row.outputs:
+            stands = yield Play(Tone(self.plan.frequency_hz, 0.0, self.row.outputs))
+            assert isinstance(stands, int)  # noqa: S101 - the answer that a Play has by contract
+            self._stands = stands
+        self.level_fs, self.last, self._since_play_s = 0.0, None, 0.0
+
     def tune(self, frequency_hz: float) -> None:
         """Take another frequency from the next tone on; what one frequency gave says nothing of the next."""
         if frequency_hz != self.plan.frequency_hz:
-            self.plan = attrs.evolve(self.plan, frequency_hz=frequency_hz)
+            inside = frequency_hz <= self.around.high_hz
+            high_hz = self.around.high_hz if inside else ROOM * frequency_hz
+            widened = high_hz != self.plan.high_hz
+            self.plan = attrs.evolve(self.plan, frequency_hz=frequency_hz, high_hz=high_hz)
+            if widened:  # a tone beyond the band is only found by a reader whose band holds it
+                settings = settings_of(self.plan, self.place, self.row)
+                self.reader = self.place.new_reader(self.place.rate_hz, settings)
             self.reader.restart(frequency_hz)
             self.last = None
 
@@ -108,16 +127,18 @@ class Stepping(Driving):
         burst = in_bursts(frequency_hz) and not self.free
         seconds = max(seconds, LEAST_CYCLES / frequency_hz)
         if burst:
-            seconds = min(seconds, BURST_S - settle_s - 2.0 * RAMP_S)
+            seconds = min(seconds, BURST_S - settle_s - BEGINNING_S)
             if frequency_hz < BURST_BELOW_HZ:  # couplings settle slowly: all of the burst that is not read
-                settle_s = BURST_S - seconds - 2.0 * RAMP_S
+                settle_s = max(BURST_S - seconds - BEGINNING_S, 0.0)
         yield from self._to(level_fs)
         kept = yield from self._read_point(seconds, settle_s, mark)
         if burst:
             self._loud_fs = self.level_fs
+            began = self._stands
             yield from self.silence()
-            yield from self.pause(pause_s(seconds + settle_s))
-            self._loud_until_s = self.clock_s - pause_s(seconds + settle_s)
+            sounded_s = max((self._stands - began) / self.place.rate_hz, seconds + settle_s)
+            yield from self.pause(pause_s(sounded_s))
+            self._loud_until_s = self.clock_s - pause_s(sounded_s)
         return kept
 
     def hushed(self) -> Doing[None]:
@@ -179,6 +200,7 @@ class Stepping(Driving):
             anew = self.level_fs == 0.0 or self._sounding_hz != self.plan.frequency_hz
             stands = yield Play(Tone(self.plan.frequency_hz, level_fs, self.row.outputs))
             assert isinstance(stands, int)  # noqa: S101 - the answer that a Play has by contract
+            self._stands = stands
             if self._zero:
                 self._origin = 0
             elif anew:
@@ -231,13 +253,13 @@ def gain_of(kept: Kept, channel: int) -> Gain | None:
     return Gain(re.at_hz, complex(re.value, im.value), re.u, bool(by_name["one clock"].value))
 
 
+def said_notes(records: Sequence[Kept | Said]) -> tuple[Note, ...]:
+    """Return what a run found out, each once, in order: also where nothing could be kept."""
+    return tuple(dict.fromkeys(each.note for each in records if isinstance(each, Said)))
+
+
 def bursts_said(tones_hz: tuple[float, ...], row: Row) -> tuple[Said, ...]:
     """Return what is to be said where some tones are read in bursts."""
     if not any(in_bursts(frequency_hz) for frequency_hz in tones_hz):
         return ()
     return (Said(note(Kind.BURST_POINTS, burst_s=BURST_S, percent=100.0 * BURST_DUTY), row.index),)
-
-
-def phases_deg(gains: np.ndarray[tuple[int], np.dtype[np.complex128]]) -> np.ndarray[tuple[int], np.dtype[np.float64]]:
-    """Return phases in degrees, from −180 to 180."""
-    return np.degrees(np.angle(gains))

@@ -24,7 +24,7 @@ from wattproof.report.sheet import Grid, Sheet
 
 def crosstalk_document(result: CrosstalkResult, frame: Frame) -> Document:
     """Return the document of one run of `crosstalk`."""
-    notes = [each for way in result.ways for each in way.notes]
+    notes = [*result.said, *(each for way in result.ways for each in way.notes)]
     return envelope(frame, {"ways": [_way(each) for each in result.ways]}, notes)
 
 
@@ -56,6 +56,6 @@ def crosstalk_sheet(result: CrosstalkResult) -> Sheet:
         grids.append(
             Grid(f"From channel {way.driven.channel} into {way.into.channel}", ("Frequency", "Crosstalk"), rows)
         )
-    notes = tuple(each for way in result.ways for each in way.notes)
+    notes = (*result.said, *(each for way in result.ways for each in way.notes))
     head = f"Driven channel at {result.plan.level_vrms:g} V rms, the other's input terminated; ± at 95 %"
     return Sheet("Crosstalk", head, tuple(grids), notes)

@@ -24,7 +24,7 @@ from wattproof.report.sheet import Grid, Sheet
 
 def frequency_document(result: FrequencyResult, frame: Frame) -> Document:
     """Return the document of one run of `frequency`."""
-    notes = [each for curve in result.curves for each in curve.notes]
+    notes = [*result.said, *(each for curve in result.curves for each in curve.notes)]
     return envelope(frame, {"curves": [_curve(result, each) for each in result.curves]}, notes)
 
 
@@ -68,7 +68,7 @@ def frequency_sheet(result: FrequencyResult) -> Sheet:
         )
         columns = ("Frequency", "V rms", "THD+N", "THD", "Noise", "")
         grids.append(Grid(f"Channel {curve.row.channel}, {curve.row.load.ohm:.4g} Ω", columns, rows))
-    notes = tuple(each for curve in result.curves for each in curve.notes)
+    notes = (*result.said, *(each for curve in result.curves for each in curve.notes))
     return Sheet("THD+N against frequency", head, tuple(grids), notes)
 
 

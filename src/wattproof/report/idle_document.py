@@ -34,7 +34,7 @@ _SHOWN_LINES = 6
 
 def idle_document(result: IdleResult, frame: Frame) -> Document:
     """Return the document of one run of `idle`."""
-    notes = [each for channel in result.channels for each in channel.notes]
+    notes = [*result.said, *(each for channel in result.channels for each in channel.notes)]
     return envelope(frame, {"channels": [_channel(result, each) for each in result.channels]}, notes)
 
 
@@ -81,7 +81,7 @@ def _levels(result: IdleResult, channel: IdleChannel, level: Quantity) -> Docume
 def idle_sheet(result: IdleResult) -> Sheet:
     """Return the page of one run of `idle`."""
     plan = result.plan
-    notes = tuple(each for channel in result.channels for each in channel.notes)
+    notes = (*result.said, *(each for channel in result.channels for each in channel.notes))
     head = f"Input terminated, nothing playing; band {plan.low_hz:g} Hz to {plan.high_hz:g} Hz; ± at 95 %"
     grids = []
     for channel in result.channels:

@@ -25,7 +25,7 @@ from wattproof.report.sheet import Grid, Sheet
 
 def output_resistance_document(result: ImpedanceResult, frame: Frame) -> Document:
     """Return the document of one run of `output-resistance`."""
-    notes = [each for curve in result.curves for each in curve.notes]
+    notes = [*result.said, *(each for curve in result.curves for each in curve.notes)]
     return envelope(frame, {"curves": [_curve(result, each) for each in result.curves]}, notes)
 
 
@@ -71,6 +71,6 @@ def output_resistance_sheet(result: ImpedanceResult) -> Sheet:
         )
         columns = ("Frequency", "Resistance", "Reactance", f"Damping factor at {curve.load_ohm:g} Ω")
         grids.append(Grid(f"Channel {curve.row.channel}", columns, rows))
-    notes = tuple(each for curve in result.curves for each in curve.notes)
+    notes = (*result.said, *(each for curve in result.curves for each in curve.notes))
     loads = " and ".join(f"{ohm:g}" for ohm in result.plan.guarded().loads_ohm)
     return Sheet("Output resistance", f"From loads of {loads} Ω at one drive; ± at 95 %", tuple(grids), notes)

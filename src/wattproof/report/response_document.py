@@ -30,7 +30,7 @@ _SHOWN_ORDERS_HZ = (50.0, 100.0, 1_000.0, 5_000.0)
 
 def response_document(result: ResponseResult, frame: Frame) -> Document:
     """Return the document of one run of `response`."""
-    notes = [each for curve in result.curves for each in curve.notes]
+    notes = [*result.said, *(each for curve in result.curves for each in curve.notes)]
     return envelope(frame, {"curves": [_curve(result, each) for each in result.curves]}, notes)
 
 
@@ -77,7 +77,7 @@ def response_sheet(result: ResponseResult) -> Sheet:
             grids.append(_orders(curve, name))
         ends = (("below", cell(curve.low_hz)), ("above", cell(curve.high_hz)))
         grids.append(Grid(f"{name}, -3 dB points", ("", "Hz"), ends))
-    notes = tuple(each for curve in result.curves for each in curve.notes)
+    notes = (*result.said, *(each for curve in result.curves for each in curve.notes))
     return Sheet("Response", head, tuple(grids), notes)
 
 

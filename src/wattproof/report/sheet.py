@@ -78,7 +78,7 @@ def _table(grid: Grid, *, ascii_only: bool) -> Table:
         return [Text(in_ascii(words) if ascii_only else words) for words in row]
 
     for name in cells(grid.columns):
-        table.add_column(name)
+        table.add_column(name, overflow="fold")
     for row in grid.rows:
         table.add_row(*cells(row))
     return table

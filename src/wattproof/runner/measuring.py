@@ -13,7 +13,7 @@ from wattproof.core.rig import Limits, Rig
 from wattproof.core.run import Ending
 from wattproof.procedures.power_hand import power_by_hand
 from wattproof.procedures.power_plan import HandPlan, PowerPlan, StepsPlan
-from wattproof.procedures.power_rows import Place, Row, rows_of
+from wattproof.procedures.power_rows import Place, Row, rows_of, settings_of
 from wattproof.procedures.power_steps import power
 from wattproof.procedures.requests import Kept, Procedure, Said
 from wattproof.procedures.statement import PowerStatement, conclude
@@ -53,6 +53,8 @@ class Measurement:
         self.plan = plan
         self.place = _place(bench, rig, calibration, new_reader)
         self.rows: tuple[Row, ...] = rows_of(plan, self.place)
+        for row in self.rows:
+            settings_of(plan, self.place, row)  # volts that are not known are refused here, before anything is asked
         limited = attrs.evolve(rig, limits=_hard_limits(plan, rig))
         self.runner = Runner(bench, limited, calibration, keeper=keeper, hand=hand, slew=DriveSlew(plan.rise_db_per_s))
         self._records: list[Kept | Said] = []
